@@ -1,0 +1,40 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <cstdint>
+
+#include "tonewalk/base/note.hpp"
+#include "tonewalk/base/sheet.hpp"
+#include "tonewalk/recording/convert.hpp"
+#include "tonewalk/recording/stream.hpp"
+
+namespace tonewalk {
+
+/// What the raw samples themselves say (2-jobs look; thresholds in docs/results.md).
+struct raw_result {
+    double rms_dbfs = not_measured, peak_dbfs = not_measured, peak_component_dbfs = not_measured;
+    double dc_dbfs = not_measured;
+    double iq_gain_error_db = not_measured;   ///< 20 log gI/gQ; NaN for real samples
+    double iq_phase_error_deg = not_measured; ///< e in I = cos, Q = sin(wt + e)
+    std::uint64_t clipped_samples = 0;
+    bool clipping_judged = false;
+    sample_index samples = 0;
+    note_set doubts; ///< clipped, non-finite-samples
+};
+[[nodiscard]] sheet describe(const raw_result&);
+
+/// Adds up what the front end counts, block by block in order.
+class raw_watch {
+public:
+    explicit raw_watch(const stream_facts&);
+    void add(const raw_counts&, std::size_t samples);
+    [[nodiscard]] raw_result result() const;
+
+private:
+    const stream_facts* facts_;
+    cell_sums total_;
+    rail_tally positive_, negative_;
+    std::uint64_t samples_ = 0, non_finite_ = 0;
+};
+
+} // namespace tonewalk

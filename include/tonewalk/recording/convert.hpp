@@ -1,0 +1,59 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <array>
+#include <cstdint>
+#include <span>
+#include <vector>
+
+#include "tonewalk/base/sample.hpp"
+#include "tonewalk/recording/stream.hpp"
+
+namespace tonewalk {
+
+/// Sums over one cell of samples, over finite samples, in full-scale units. Integers sum exactly.
+struct cell_sums {
+    double i = 0, q = 0, ii = 0, qq = 0, iq = 0; ///< sums of components and products
+    double peak_power = 0;                       ///< largest |z|^2
+    double peak_component = 0;                   ///< largest |i| or |q|
+};
+
+/// How often the outermost codes occur on one rail (positive, negative) of both components together.
+/// counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero. Codes: integers as
+/// stored (shifted to code_bits); floats by the bits of |x| above the lowest 8 (steps of 2^-15 or less).
+struct rail_tally {
+    std::int64_t outermost = -1; ///< |code|; -1: none seen
+    std::array<std::uint64_t, 4> counts{};
+    void merge(const rail_tally&) noexcept; ///< exact, in any order
+};
+
+/// What one block says about the raw samples; merged in block order, so that neither block size nor
+/// threads change a total.
+struct raw_counts {
+    std::vector<cell_sums> cells;
+    rail_tally positive, negative;
+    std::vector<sample_range> non_finite; ///< stored index; ranges less than a cell apart are one
+    void clear() noexcept;
+};
+
+/// Turns stored frames into complex samples: the lane picked, integers scaled by 2^(bits-1) (unsigned less
+/// 2^(bits-1) first), real samples r to 2r + 0j (the analytic signal's gain), I and Q exchanged, spectrum
+/// mirrored (conjugate), non-finite samples to zero.
+class sample_converter {
+public:
+    explicit sample_converter(const stream_facts&);
+    /// out.size() samples from frames.size()/frame_bytes >= out.size() frames.
+    void convert(std::span<const std::byte> frames, std::span<cf32> out) const noexcept;
+    /// The same, filling `counts`: one cell_sums per `cell` samples (the last may be shorter); frames[0] is
+    /// stored index `first`. counts.cells has room for them.
+    void convert(std::span<const std::byte> frames, std::span<cf32> out, sample_index first,
+                 std::size_t cell, raw_counts& counts) const noexcept;
+
+private:
+    sample_format format_;
+    std::size_t lanes_, lane_;
+    unsigned code_shift_;
+    bool swap_iq_, inverted_;
+};
+
+} // namespace tonewalk

@@ -1,0 +1,81 @@
+# A room is one object library, tonewalk_ROOM, made of every .cpp in src/ROOM. It links only rooms
+# above it in the table of docs/architecture.md; tests/rooms_test.sh holds the includes to that.
+add_library(tonewalk_options INTERFACE)
+target_compile_features(tonewalk_options INTERFACE cxx_std_20)
+target_compile_options(tonewalk_options INTERFACE -ffp-contract=off)
+target_include_directories(tonewalk_options INTERFACE
+  $<BUILD_INTERFACE:${PROJECT_SOURCE_DIR}/include>)
+if(TONEWALK_DEVELOPER_MODE)
+  target_compile_options(tonewalk_options INTERFACE
+    -Wall -Wextra -Wpedantic -Wshadow -Wnon-virtual-dtor -Wold-style-cast -Wcast-align
+    -Woverloaded-virtual -Wconversion -Wsign-conversion -Wdouble-promotion -Werror)
+endif()
+
+set_property(GLOBAL PROPERTY tonewalk_rooms "")
+
+# tonewalk_room(NAME ROOMS room... OUTSIDE target...)
+function(tonewalk_room name)
+  cmake_parse_arguments(arg "" "" "ROOMS;OUTSIDE" ${ARGN})
+  file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/*.cpp)
+  add_library(tonewalk_${name} OBJECT ${sources})
+  set_target_properties(tonewalk_${name} PROPERTIES POSITION_INDEPENDENT_CODE ON)
+  target_include_directories(tonewalk_${name} PRIVATE ${CMAKE_CURRENT_SOURCE_DIR})
+  target_link_libraries(tonewalk_${name} PUBLIC tonewalk_options PRIVATE ${arg_OUTSIDE})
+  set_property(TARGET tonewalk_${name} PROPERTY tonewalk_room_outside "${arg_OUTSIDE}")
+  set(above "")
+  foreach(room IN LISTS arg_ROOMS)
+    get_property(higher TARGET tonewalk_${room} PROPERTY tonewalk_room_above)
+    list(APPEND above ${higher} ${room})
+  endforeach()
+  list(REMOVE_DUPLICATES above)
+  set_property(TARGET tonewalk_${name} PROPERTY tonewalk_room_above "${above}")
+  set_property(GLOBAL APPEND PROPERTY tonewalk_rooms ${name})
+endfunction()
+
+# tonewalk_link_rooms(TARGET room...): the objects of these rooms and of all rooms above them.
+function(tonewalk_link_rooms target)
+  set(all "")
+  foreach(room IN LISTS ARGN)
+    get_property(above TARGET tonewalk_${room} PROPERTY tonewalk_room_above)
+    list(APPEND all ${above} ${room})
+  endforeach()
+  list(REMOVE_DUPLICATES all)
+  foreach(room IN LISTS all)
+    get_property(outside TARGET tonewalk_${room} PROPERTY tonewalk_room_outside)
+    target_link_libraries(${target} PRIVATE tonewalk_${room} ${outside})
+    target_sources(${target} PRIVATE $<TARGET_OBJECTS:tonewalk_${room}>)
+  endforeach()
+  target_link_libraries(${target} PRIVATE tonewalk_options)
+endfunction()
+
+# tonewalk_room_tests(NAME [ROOMS room...]): one executable of every *_test.cpp in tests/NAME.
+# The start of a suite's name is its label: Outside*, Coverage*, Slow*, Malformed*, Golden*; else unit.
+function(tonewalk_room_tests name)
+  cmake_parse_arguments(arg "" "" "ROOMS" ${ARGN})
+  file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${name}/*_test.cpp
+       ${CMAKE_CURRENT_SOURCE_DIR}/${name}/*_twin.cpp)
+  if(NOT sources)
+    return()
+  endif()
+  add_executable(tonewalk_${name}_tests ${sources})
+  set_target_properties(tonewalk_${name}_tests PROPERTIES
+    RUNTIME_OUTPUT_DIRECTORY ${PROJECT_BINARY_DIR}/tests)
+  tonewalk_link_rooms(tonewalk_${name}_tests ${name} ${arg_ROOMS})
+  target_include_directories(tonewalk_${name}_tests PRIVATE ${PROJECT_SOURCE_DIR}/tests)
+  target_compile_definitions(tonewalk_${name}_tests PRIVATE
+    TONEWALK_TEST_DATA="${PROJECT_SOURCE_DIR}/tests/data"
+    TONEWALK_TEST_PYTHON="/usr/bin/python3"
+    TONEWALK_TEST_SUPPORT="${PROJECT_SOURCE_DIR}/tests/support")
+  target_link_libraries(tonewalk_${name}_tests PRIVATE GTest::gtest_main)
+  target_precompile_headers(tonewalk_${name}_tests PRIVATE <gtest/gtest.h>)
+  include(GoogleTest)
+  set(special Outside Coverage Slow Malformed Golden)
+  list(JOIN special "*:" others)
+  gtest_discover_tests(tonewalk_${name}_tests TEST_PREFIX "${name}." TEST_FILTER "-${others}*"
+    DISCOVERY_TIMEOUT 60 PROPERTIES LABELS unit)
+  foreach(kind IN LISTS special)
+    string(TOLOWER ${kind} label)
+    gtest_discover_tests(tonewalk_${name}_tests TEST_PREFIX "${name}." TEST_FILTER "${kind}*"
+      DISCOVERY_TIMEOUT 60 TEST_LIST ${name}_${label} PROPERTIES LABELS ${label} TIMEOUT 1800)
+  endforeach()
+endfunction()
