@@ -1,0 +1,34 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <filesystem>
+#include <optional>
+#include <string>
+#include <string_view>
+
+namespace tonewalk {
+
+/// Small text helpers; all work the same in every locale.
+
+/// Without the white space at both ends.
+[[nodiscard]] std::string_view trimmed(std::string_view text) noexcept;
+
+/// ASCII letters made small.
+[[nodiscard]] std::string lower_case(std::string_view text);
+
+/// A finite decimal number that fills the whole text ("12", "-3.5e2", "+1"), else nothing.
+[[nodiscard]] std::optional<double> parse_plain_number(std::string_view text) noexcept;
+
+/// Whether a comma stands where a decimal point would make the text a number ("12,5").
+[[nodiscard]] bool has_decimal_comma(std::string_view text);
+
+/// In double quotes, fit for one line: control characters become "?", long text is cut.
+[[nodiscard]] std::string quoted(std::string_view text);
+
+/// Well-formed UTF-8: every byte that is not part of it becomes U+FFFD.
+[[nodiscard]] std::string valid_utf8(std::string_view text);
+
+/// The whole of a small text file, without a UTF-8 byte-order mark. Throws error{unreadable}.
+[[nodiscard]] std::string read_text_file(const std::filesystem::path &);
+
+} // namespace tonewalk

@@ -1,0 +1,36 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "tonewalk/base/error.hpp"
+
+#include <cassert>
+
+#include <fmt/format.h>
+
+namespace tonewalk {
+namespace {
+
+std::string line(std::string_view what, std::string_view where, std::string_view mend) {
+    return fmt::format("{}{}{}{}{}", where, where.empty() ? "" : ": ", what,
+                       mend.empty() ? "" : "; ", mend);
+}
+
+} // namespace
+
+error::error(fault kind, std::string_view what, std::string_view where, std::string_view mend)
+    : std::runtime_error{line(what, where, mend)}, kind_{kind} {}
+
+int error::exit_status() const noexcept {
+    switch (kind_) {
+    case fault::bad_request:
+        return 2;
+    case fault::unreadable:
+    case fault::malformed:
+    case fault::unsupported:
+        return 3;
+    case fault::unwritable:
+        return 4;
+    }
+    assert(false);
+    return 5;
+}
+
+} // namespace tonewalk
