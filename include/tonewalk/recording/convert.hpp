@@ -11,7 +11,9 @@
 
 namespace tonewalk {
 
-/// Sums over one cell of samples, over finite samples, in full-scale units. Integers sum exactly.
+/// Sums over one cell of samples, over finite samples, in full-scale units, after I and Q are exchanged and
+/// the spectrum mirrored as asked. Of real samples i is the stored r itself (not the converted 2r) and q is 0.
+/// Integers sum exactly.
 struct cell_sums {
     double i = 0, q = 0, ii = 0, qq = 0, iq = 0; ///< sums of components and products
     double peak_power = 0;                       ///< largest |z|^2
@@ -20,7 +22,7 @@ struct cell_sums {
 
 /// How often the outermost codes occur on one rail (positive, negative) of both components together.
 /// counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero. Codes: integers as
-/// stored (shifted to code_bits); floats by the bits of |x| above the lowest 8 (steps of 2^-15 or less).
+/// stored (unsigned less 2^(bits-1), shifted to code_bits); zero is on neither rail; floats by the bits of |x| above the lowest 8 (steps of 2^-15 or less).
 struct rail_tally {
     std::int64_t outermost = -1; ///< |code|; -1: none seen
     std::array<std::uint64_t, 4> counts{};
@@ -45,7 +47,8 @@ public:
     /// out.size() samples from frames.size()/frame_bytes >= out.size() frames.
     void convert(std::span<const std::byte> frames, std::span<cf32> out) const noexcept;
     /// The same, filling `counts`: one cell_sums per `cell` samples (the last may be shorter); frames[0] is
-    /// stored index `first`. counts.cells has room for them.
+    /// stored index `first`. counts.cells and counts.non_finite have room (reserved) for one entry a cell, and
+    /// non_finite for one more; both are appended to.
     void convert(std::span<const std::byte> frames, std::span<cf32> out, sample_index first,
                  std::size_t cell, raw_counts& counts) const noexcept;
 
