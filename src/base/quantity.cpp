@@ -65,7 +65,7 @@ std::optional<double> in_units(const measure &typed, const std::array<unit_power
 [[noreturn]] void refuse(std::string_view text, std::string_view option, std::string_view wanted,
                          std::string_view example) {
     const bool comma = text.find(',') != text.npos;
-    throw error{fault::bad_request, fmt::format("{} is not {}", quoted(text), wanted), option,
+    throw error{fault::bad_request, fmt::format("{} is not {}", in_quotes(text), wanted), option,
                 fmt::format("{}type it like {}", comma ? "use a decimal point, " : "", example)};
 }
 
@@ -127,7 +127,7 @@ std::optional<double> seconds_of(std::string_view text) {
                                  std::string_view wanted, std::string_view example) {
     if (split(text).unit == "m")
         throw error{fault::bad_request,
-                    fmt::format("{} could mean metres or minutes", quoted(text)), option,
+                    fmt::format("{} could mean metres or minutes", in_quotes(text)), option,
                     "type min for minutes, s for seconds"};
     refuse(text, option, wanted, example);
 }
@@ -205,7 +205,7 @@ long parse_whole(std::string_view text, std::string_view option, long lowest, lo
     const auto [stop, failure] = std::from_chars(digits.data(), end, value);
     if (failure == std::errc::result_out_of_range ||
         (failure == std::errc{} && stop == end && (value < lowest || value > highest)))
-        throw error{fault::bad_request, fmt::format("{} is out of range", quoted(text)), option,
+        throw error{fault::bad_request, fmt::format("{} is out of range", in_quotes(text)), option,
                     fmt::format("type a whole number from {} to {}", lowest, highest)};
     if (failure != std::errc{} || stop != end)
         refuse(text, option, "a whole number", fmt::format("{}", lowest));

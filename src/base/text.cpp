@@ -82,7 +82,7 @@ bool has_decimal_comma(std::string_view text) {
     return parse_plain_number(with_point).has_value();
 }
 
-std::string quoted(std::string_view text) {
+std::string in_quotes(std::string_view text) {
     constexpr std::size_t longest = 80;
     std::string line = valid_utf8(text.substr(0, longest));
     for (char &letter : line)

@@ -23,7 +23,7 @@ namespace tonewalk {
 [[nodiscard]] bool has_decimal_comma(std::string_view text);
 
 /// In double quotes, fit for one line: control characters become "?", long text is cut.
-[[nodiscard]] std::string quoted(std::string_view text);
+[[nodiscard]] std::string in_quotes(std::string_view text);
 
 /// Well-formed UTF-8: every byte that is not part of it becomes U+FFFD.
 [[nodiscard]] std::string valid_utf8(std::string_view text);
