@@ -1,5 +1,5 @@
 # A room is one object library, tonewalk_ROOM, made of every .cpp in src/ROOM. It links only rooms
-# above it in the table of docs/architecture.md; tests/rooms_test.sh holds the includes to that.
+# above it in the table of docs/architecture.md; tests/house/rooms_test.py holds the includes to that.
 add_library(tonewalk_options INTERFACE)
 target_compile_features(tonewalk_options INTERFACE cxx_std_20)
 target_compile_options(tonewalk_options INTERFACE -ffp-contract=off)
