@@ -22,7 +22,8 @@ struct cell_sums {
 
 /// How often the outermost codes occur on one rail (positive, negative) of both components together.
 /// counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero. Codes: integers as
-/// stored (unsigned less 2^(bits-1), shifted to code_bits); zero is on neither rail; floats by the bits of |x| above the lowest 8 (steps of 2^-15 or less).
+/// stored (unsigned less 2^(bits-1), shifted to code_bits); floats by the bits of |x| above the lowest 8
+/// (steps of 2^-15 or less). Zero is on neither rail.
 struct rail_tally {
     std::int64_t outermost = -1; ///< |code|; -1: none seen
     std::array<std::uint64_t, 4> counts{};
@@ -53,6 +54,8 @@ public:
                  std::size_t cell, raw_counts& counts) const noexcept;
 
 private:
+    void run(std::span<const std::byte> frames, std::span<cf32> out, sample_index first, std::size_t cell,
+             raw_counts* counts) const noexcept;
     sample_format format_;
     std::size_t lanes_, lane_;
     unsigned code_shift_;
