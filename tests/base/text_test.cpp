@@ -1,0 +1,53 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "tonewalk/base/text.hpp"
+
+#include "support/expect_error.hpp"
+#include "support/temporary_folder.hpp"
+
+namespace {
+
+using namespace tonewalk;
+
+TEST(ParsePlainNumber, TakesTheWholeTextOrNothing) {
+    EXPECT_EQ(parse_plain_number("-3.5e2"), -350.0);
+    EXPECT_EQ(parse_plain_number("+1"), 1.0);
+    for (const char *text : {"", " 1", "1 ", "1,5", "inf", "nan", "1e400", "+-1", "++1", "0x1p3"})
+        EXPECT_FALSE(parse_plain_number(text).has_value()) << text;
+}
+
+TEST(HasDecimalComma, MeansOneCommaInAnOtherwisePlainNumber) {
+    EXPECT_TRUE(has_decimal_comma("12,5"));
+    EXPECT_TRUE(has_decimal_comma("-0,5"));
+    EXPECT_FALSE(has_decimal_comma("12.5"));
+    EXPECT_FALSE(has_decimal_comma("1,2,3"));
+    EXPECT_FALSE(has_decimal_comma("a,b"));
+}
+
+// The Unicode Standard 15.0, table 3-7 (well-formed UTF-8 byte sequences); from memory.
+TEST(ValidUtf8, ReplacesWhatIsNotWellFormed) {
+    EXPECT_EQ(valid_utf8("Gr\xC3\xBC\xC3\x9F"), "Gr\xC3\xBC\xC3\x9F");
+    EXPECT_EQ(valid_utf8("\xE2\x82\xAC \xF0\x9F\x93\xA1"), "\xE2\x82\xAC \xF0\x9F\x93\xA1");
+    const std::string mark = "\xEF\xBF\xBD";
+    EXPECT_EQ(valid_utf8("a\xFF"), "a" + mark);
+    EXPECT_EQ(valid_utf8("\xC0\x80"), mark + mark);            // overlong
+    EXPECT_EQ(valid_utf8("\xED\xA0\x80"), mark + mark + mark); // surrogate
+    EXPECT_EQ(valid_utf8("\xF4\x90\x80\x80"), mark + mark + mark + mark);
+    EXPECT_EQ(valid_utf8("\xE2\x82"), mark + mark); // cut off
+}
+
+TEST(InQuotes, FitsOneLine) {
+    EXPECT_EQ(in_quotes("a\nb\x1B[31m"), "\"a?b?[31m\"");
+    EXPECT_LT(in_quotes(std::string(1000, 'x')).size(), 100U);
+}
+
+TEST(ReadTextFile, DropsTheByteOrderMarkAndNamesWhatIsMissing) {
+    const test::temporary_folder folder;
+    test::write_file(folder / "a.txt", "\xEF\xBB\xBFhello");
+    EXPECT_EQ(read_text_file(folder / "a.txt"), "hello");
+    const auto missing = test::caught([&] { (void)read_text_file(folder / "b.txt"); });
+    EXPECT_EQ(missing.kind, fault::unreadable);
+    EXPECT_TRUE(missing.says("b.txt: cannot be read (No such file"));
+    EXPECT_EQ(test::caught([&] { (void)read_text_file(folder.path()); }).kind, fault::unreadable);
+}
+
+} // namespace
