@@ -96,8 +96,7 @@ bool csv_table::has(std::string_view name) const noexcept {
 std::size_t csv_table::column(std::string_view name) const {
     const auto found = std::find(header_.begin(), header_.end(), name);
     if (found == header_.end()) {
-        const std::vector<std::string_view> present{header_.begin(), header_.end()};
-        const std::string_view nearest = near_name(name, present);
+        const std::string nearest = near_name(name, header_);
         throw error{fault::malformed, fmt::format("has no column {}", name), name_ + ", line 1",
                     nearest.empty() ? fmt::format("add the column {}", name)
                                     : fmt::format("is {} meant? rename it to {}", nearest, name)};

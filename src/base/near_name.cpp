@@ -34,7 +34,7 @@ std::size_t slips(std::string_view a, std::string_view b) {
 
 } // namespace
 
-std::string_view near_name(std::string_view typed, std::span<const std::string_view> names) {
+std::string near_name(std::string_view typed, std::span<const std::string_view> names) {
     const std::string wanted = lower_case(typed);
     std::string_view nearest;
     std::size_t fewest = static_cast<std::size_t>(-1);
@@ -45,11 +45,15 @@ std::string_view near_name(std::string_view typed, std::span<const std::string_v
             nearest = name;
         }
     }
-    return nearest;
+    return std::string{nearest};
+}
+
+std::string near_name(std::string_view typed, std::span<const std::string> names) {
+    return near_name(typed, std::vector<std::string_view>{names.begin(), names.end()});
 }
 
 std::string name_hint(std::string_view typed, std::span<const std::string_view> names) {
-    const std::string_view nearest = near_name(typed, names);
+    const std::string nearest = near_name(typed, names);
     if (!nearest.empty())
         return fmt::format("did you mean {}?", nearest);
     return fmt::format("known are: {}", fmt::join(names, ", "));

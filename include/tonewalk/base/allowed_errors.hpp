@@ -6,8 +6,8 @@
 
 namespace tonewalk {
 
-/// One row of the table of allowed errors, shared by tests and docs: what may differ from the truth by how
-/// much, under which conditions.
+/// One row of the table of allowed errors, shared by tests and docs: what may differ from the truth
+/// by how much, under which conditions.
 struct allowed_error {
     std::string_view key;        ///< "level_db.clean"
     std::string_view quantity;   ///< "carrier and tone level"

@@ -7,7 +7,8 @@
 
 namespace tonewalk {
 
-/// Why a run cannot go on. Exit statuses: bad_request 2; unreadable, malformed, unsupported 3; unwritable 4.
+/// Why a run cannot go on. Exit statuses: bad_request 2; unreadable, malformed, unsupported 3;
+/// unwritable 4.
 enum class fault { bad_request, unreadable, malformed, unsupported, unwritable };
 
 /// A failure that the user can mend. what() is one line: "WHERE: WHAT; MEND".

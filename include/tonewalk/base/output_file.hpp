@@ -9,16 +9,17 @@
 
 namespace tonewalk {
 
-/// A file that appears whole or not at all: written beside its target under a temporary name, synced,
-/// renamed without replacing unless `force`. A target that exists and is no regular file (FIFO, device)
-/// is written in place; "-" is standard output. Not committed: the destructor removes the temporary.
-/// Every failure throws error{unwritable} naming the path and the mend.
+/// A file that appears whole or not at all: written beside its target under a temporary name,
+/// synced, renamed without replacing unless `force`. A target that exists and is no regular file
+/// (FIFO, device) is written in place; "-" is standard output. Not committed: the destructor
+/// removes the temporary. Every failure throws error{unwritable} naming the path and the mend.
 class output_file {
 public:
-    /// Checks that the target can be written (folder there, no file in the way) and opens the temporary.
+    /// Checks that the target can be written (folder there, no file in the way) and opens the
+    /// temporary.
     explicit output_file(std::filesystem::path target, bool force = false);
-    output_file(output_file&&) noexcept;
-    output_file& operator=(output_file&&) noexcept;
+    output_file(output_file &&) noexcept;
+    output_file &operator=(output_file &&) noexcept;
     ~output_file();
 
     void write(std::string_view text); ///< buffered
@@ -26,9 +27,13 @@ public:
     void commit();
 
     /// Where the bytes are now, for a library that wants a path or descriptor (libsndfile).
-    [[nodiscard]] const std::filesystem::path& path_in_progress() const noexcept { return temporary_; }
+    [[nodiscard]] const std::filesystem::path &path_in_progress() const noexcept {
+        return temporary_;
+    }
     [[nodiscard]] int descriptor() const noexcept { return descriptor_; }
-    [[nodiscard]] bool closed_by_reader() const noexcept { return reader_gone_; } ///< EPIPE seen: quiet
+    [[nodiscard]] bool closed_by_reader() const noexcept {
+        return reader_gone_;
+    } ///< EPIPE seen: quiet
 
 private:
     void flush();

@@ -6,9 +6,9 @@
 
 namespace tonewalk {
 
-using cf32 = std::complex<float>;   ///< one IQ sample, full scale = 1.0
+using cf32 = std::complex<float>; ///< one IQ sample, full scale = 1.0
 using cf64 = std::complex<double>;
-using sample_index = std::int64_t;  ///< samples of one lane; 0 is the recording's first sample
+using sample_index = std::int64_t; ///< samples of one lane; 0 is the recording's first sample
 
 /// Samples [first, first + count).
 struct sample_range {

@@ -12,18 +12,20 @@
 
 namespace tonewalk {
 
-/// One value of a result: null, yes/no, whole number, number (NaN and infinities become null), text.
+/// One value of a result: null, yes/no, whole number, number (NaN and infinities become null),
+/// text.
 using cell = std::variant<std::monostate, bool, std::int64_t, double, std::string>;
 
-/// A named value. `key` is the JSON name with its unit (carrier_dbfs); `unit` is for people ("dBFS").
+/// A named value. `key` is the JSON name with its unit (carrier_dbfs); `unit` is for people
+/// ("dBFS").
 struct sheet_entry {
     std::string key;
     std::string unit;
     cell value;
 };
 
-/// A column that is computed row by row, so that a long log is never copied. What `at` looks at must
-/// outlive the sheet.
+/// A column that is computed row by row, so that a long log is never copied. What `at` looks at
+/// must outlive the sheet.
 struct sheet_column {
     std::string key;
     std::string unit;
@@ -61,15 +63,16 @@ struct sheet {
     std::vector<std::variant<sheet_entry, sheet_table, sheet_group>> items;
     std::vector<curve> curves;
 
-    sheet& add(std::string key, std::string unit, cell value);
+    sheet &add(std::string key, std::string unit, cell value);
     /// key, key_u95
-    sheet& add(std::string key, std::string unit, const estimate&);
+    sheet &add(std::string key, std::string unit, const estimate &);
     /// key, key_low95, key_high95, key_u95
-    sheet& add(std::string key, std::string unit, const interval_estimate&);
-    sheet& add(sheet_table);
-    sheet& add(std::string key, sheet part);
-    sheet& add(curve);
-    [[nodiscard]] const cell* find(std::string_view key) const noexcept; ///< a top-level entry, or null
+    sheet &add(std::string key, std::string unit, const interval_estimate &);
+    sheet &add(sheet_table);
+    sheet &add(std::string key, sheet part);
+    sheet &add(curve);
+    [[nodiscard]] const cell *
+    find(std::string_view key) const noexcept; ///< a top-level entry, or null
 };
 
 } // namespace tonewalk
