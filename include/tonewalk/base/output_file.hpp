@@ -31,6 +31,7 @@ public:
         return temporary_;
     }
     [[nodiscard]] int descriptor() const noexcept { return descriptor_; }
+    [[nodiscard]] bool in_place() const noexcept { return in_place_; } ///< a pipe or device
     [[nodiscard]] bool closed_by_reader() const noexcept {
         return reader_gone_;
     } ///< EPIPE seen: quiet
