@@ -69,6 +69,44 @@ int to_integer(float sample, int bits) {
     return static_cast<int>(code * (1L << (32 - bits)));
 }
 
+/// What libsndfile writes through: a descriptor, and the first failure, which libsndfile itself
+/// forgets when it happens while the file is closed.
+struct descriptor_io {
+    int descriptor = -1;
+    int failure = 0; ///< errno
+
+    static descriptor_io &of(void *self) { return *static_cast<descriptor_io *>(self); }
+    static sf_count_t length(void *self) {
+        const sf_count_t here = tell(self);
+        const sf_count_t end = seek(0, SEEK_END, self);
+        seek(here, SEEK_SET, self);
+        return end;
+    }
+    static sf_count_t seek(sf_count_t offset, int whence, void *self) {
+        return ::lseek(of(self).descriptor, offset, whence);
+    }
+    static sf_count_t tell(void *self) { return seek(0, SEEK_CUR, self); }
+    static sf_count_t read(void *into, sf_count_t bytes, void *self) {
+        return ::read(of(self).descriptor, into, static_cast<std::size_t>(bytes));
+    }
+    static sf_count_t write(const void *from, sf_count_t bytes, void *self) {
+        const char *const start = static_cast<const char *>(from);
+        sf_count_t done = 0;
+        while (done < bytes) {
+            const ssize_t written =
+                ::write(of(self).descriptor, start + done, static_cast<std::size_t>(bytes - done));
+            if (written > 0) {
+                done += written;
+            } else if (errno != EINTR) {
+                of(self).failure = errno;
+                break;
+            }
+        }
+        return done;
+    }
+    static inline SF_VIRTUAL_IO functions{&length, &seek, &read, &write, &tell};
+};
+
 } // namespace
 
 /// Libsndfile writes into a descriptor that it can seek in: the output's own temporary; where the
