@@ -14,7 +14,7 @@ namespace tonewalk {
 /// Makes a scene's samples in order. The same scene gives the same bits on every machine and
 /// however the output is cut (64-bit integer phases; sine, logarithm and Gaussian from + - x / and
 /// square root).
-///   shape   stored samples only: lost ones are made and dropped
+///   shape   stored samples only; over a gap the carriers run on, the gain control waits
 ///   cost    about 0.1 to 0.2 us a sample for one carrier with a tone and noise; memory fixed but
 ///   for
 ///           the scene itself

@@ -140,8 +140,8 @@ struct scene_gain_step {
     double gain_db = 0.0;
 };
 
-/// Automatic gain control, feedback: holds the output's power at the target. Starts settled: the
-/// gain is 0 dB at time 0 unless begin_db says otherwise.
+/// Automatic gain control, feedback: holds the output's power at the target. It starts from begin_db
+/// at time 0 and waits during gaps.
 struct scene_gain_control {
     double target_dbfs = -20.0;
     double attack_s = 0.01; ///< time constant while the output is too strong
