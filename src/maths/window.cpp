@@ -1,0 +1,102 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "tonewalk/maths/window.hpp"
+
+#include <array>
+#include <cassert>
+#include <cmath>
+#include <complex>
+#include <numbers>
+
+#include "tonewalk/base/decibel.hpp"
+
+namespace tonewalk {
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+
+/// |sum v[n] e^(-j 2 pi bins n/N)|.
+template <class Value>
+double transform_magnitude(std::size_t size, double bins, Value value) {
+    std::complex<double> sum{};
+    for (std::size_t n = 0; n < size; ++n) {
+        const double turn = bins * static_cast<double>(n) / static_cast<double>(size);
+        sum += value(n) * std::polar(1.0, -two_pi * turn);
+    }
+    return std::abs(sum);
+}
+
+} // namespace
+
+window::window(std::size_t size, std::span<const double> coefficients)
+    : values_(size), coefficients_(coefficients.begin(), coefficients.end()) {
+    assert(size > 0 && !coefficients.empty());
+    for (std::size_t n = 0; n < size; ++n) {
+        const double turn = static_cast<double>(n) / static_cast<double>(size);
+        double sign = 1.0;
+        for (std::size_t k = 0; k < coefficients_.size(); ++k) {
+            values_[n] +=
+                sign * coefficients_[k] * std::cos(two_pi * static_cast<double>(k) * turn);
+            sign = -sign;
+        }
+    }
+}
+
+double window::coherent_gain() const noexcept {
+    double sum = 0.0;
+    for (const double w : values_) {
+        sum += w;
+    }
+    return sum / static_cast<double>(size());
+}
+
+double window::noise_bandwidth_bins() const noexcept {
+    double sum = 0.0, squares = 0.0;
+    for (const double w : values_) {
+        sum += w;
+        squares += w * w;
+    }
+    return static_cast<double>(size()) * squares / (sum * sum);
+}
+
+double window::scalloping_loss_db() const noexcept {
+    return -decibel::from_amplitude_ratio(std::abs(response(0.5))).db();
+}
+
+double window::power_correlation(double bins) const noexcept {
+    const auto squared = [this](std::size_t n) { return values_[n] * values_[n]; };
+    const double ratio =
+        transform_magnitude(size(), bins, squared) / transform_magnitude(size(), 0.0, squared);
+    return ratio * ratio;
+}
+
+double window::response(double bins) const noexcept {
+    const double centre = static_cast<double>(size()) / 2.0;
+    double sum = 0.0, total = 0.0;
+    for (std::size_t n = 0; n < size(); ++n) {
+        const double turn = (static_cast<double>(n) - centre) / static_cast<double>(size());
+        sum += values_[n] * std::cos(two_pi * bins * turn);
+        total += values_[n];
+    }
+    return sum / total;
+}
+
+window rectangular_window(std::size_t size) {
+    return {size, std::array{1.0}};
+}
+window hann_window(std::size_t size) {
+    return {size, std::array{0.5, 0.5}};
+}
+window hamming_window(std::size_t size) {
+    return {size, std::array{0.54, 0.46}};
+}
+window blackman_window(std::size_t size) {
+    return {size, std::array{0.42, 0.5, 0.08}};
+}
+window blackman_harris_window(std::size_t size) {
+    return {size, std::array{0.35875, 0.48829, 0.14128, 0.01168}};
+}
+window nuttall_window(std::size_t size) {
+    return {size, std::array{0.3635819, 0.4891775, 0.1365995, 0.0106411}};
+}
+
+} // namespace tonewalk
