@@ -1,0 +1,30 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <functional>
+#include <string>
+#include <vector>
+
+#include "signals.hpp"
+
+namespace CLI {
+class App;
+}
+
+namespace tonewalk::cli {
+
+/// What a job is told besides its own options.
+struct program {
+    std::vector<std::string> command; ///< as typed
+    const stop_watch &stopping;
+};
+
+/// Runs a job whose options have been read; returns the exit status.
+using job_action = std::function<int(const program &)>;
+
+/// Each adds its options to the job's own command and returns what to do once they are read.
+job_action add_hear(CLI::App &);
+job_action add_levels(CLI::App &);
+job_action add_make(CLI::App &);
+
+} // namespace tonewalk::cli
