@@ -24,8 +24,8 @@ struct layout {
 template <class Value>
 struct chunk_values {
     alignas(64) std::array<Value, 2 * chunk> both; // I of all samples, then Q
-    Value *i() noexcept { return both.data(); }
-    Value *q() noexcept { return both.data() + chunk; }
+    Value* i() noexcept { return both.data(); }
+    Value* q() noexcept { return both.data() + chunk; }
 };
 
 template <class Stored>
@@ -47,16 +47,16 @@ constexpr double full_scale() noexcept {
 }
 
 template <class Stored>
-void read_chunk(const std::byte *frames, const layout &where, std::size_t count,
-                chunk_values<value_of<Stored>> &values) noexcept {
-    auto *const i = values.i();
-    auto *const q = values.q();
+void read_chunk(const std::byte* frames, const layout& where, std::size_t count,
+                chunk_values<value_of<Stored>>& values) noexcept {
+    auto* const i = values.i();
+    auto* const q = values.q();
     for (std::size_t n = 0; n < count; ++n) {
-        const std::byte *const frame = frames + n * where.stride;
+        const std::byte* const frame = frames + n * where.stride;
         i[n] = centred(load<Stored>(frame + where.i_offset, where.reversed));
     }
     for (std::size_t n = 0; where.is_complex && n < count; ++n) {
-        const std::byte *const frame = frames + n * where.stride;
+        const std::byte* const frame = frames + n * where.stride;
         q[n] = centred(load<Stored>(frame + where.q_offset, where.reversed));
     }
     std::fill(i + count, i + chunk, value_of<Stored>{0});
@@ -66,7 +66,7 @@ void read_chunk(const std::byte *frames, const layout &where, std::size_t count,
 // The common case, one lane of complex samples in this machine's byte order, in a loop that
 // vectorises.
 template <class Stored>
-void read_plain_chunk(const std::byte *frames, chunk_values<value_of<Stored>> &values) noexcept {
+void read_plain_chunk(const std::byte* frames, chunk_values<value_of<Stored>>& values) noexcept {
     std::array<Stored, 2 * chunk> stored;
     std::memcpy(stored.data(), frames, sizeof stored);
     for (std::size_t n = 0; n < chunk; ++n) {
@@ -75,9 +75,9 @@ void read_plain_chunk(const std::byte *frames, chunk_values<value_of<Stored>> &v
     }
 }
 
-void note_non_finite(std::vector<sample_range> &ranges, sample_index index, std::size_t cell) {
+void note_non_finite(std::vector<sample_range>& ranges, sample_index index, std::size_t cell) {
     if (!ranges.empty()) {
-        sample_range &last = ranges.back();
+        sample_range& last = ranges.back();
         if (index - (last.first + last.count) < static_cast<sample_index>(cell)) {
             last.count = index + 1 - last.first;
             return;
@@ -88,8 +88,8 @@ void note_non_finite(std::vector<sample_range> &ranges, sample_index index, std:
 
 // Zeroes samples that single precision cannot hold, and says where they were.
 template <class Value>
-void drop_non_finite(chunk_values<Value> &values, sample_index first, std::size_t cell,
-                     raw_counts *counts) {
+void drop_non_finite(chunk_values<Value>& values, sample_index first, std::size_t cell,
+                     raw_counts* counts) {
     if constexpr (std::is_floating_point_v<Value>) {
         float poison = 0.0F;
         for (const Value value : values.both)
@@ -121,7 +121,7 @@ std::int32_t code_of(Value value, unsigned shift) noexcept {
 
 // The rail of the given sign: the outermost code of the chunk and its three neighbours.
 template <int Sign>
-void tally_rail(const std::array<std::int32_t, 2 * chunk> &codes, rail_tally &rail) noexcept {
+void tally_rail(const std::array<std::int32_t, 2 * chunk>& codes, rail_tally& rail) noexcept {
     std::int32_t extreme = 0;
     for (const std::int32_t code : codes)
         extreme = Sign > 0 ? std::max(extreme, code) : std::min(extreme, code);
@@ -140,7 +140,7 @@ void tally_rail(const std::array<std::int32_t, 2 * chunk> &codes, rail_tally &ra
 }
 
 template <class Value>
-void tally_chunk(const chunk_values<Value> &values, unsigned shift, raw_counts &counts) noexcept {
+void tally_chunk(const chunk_values<Value>& values, unsigned shift, raw_counts& counts) noexcept {
     std::array<std::int32_t, 2 * chunk> codes;
     for (std::size_t n = 0; n < codes.size(); ++n)
         codes[n] = code_of(values.both[n], shift);
@@ -152,7 +152,7 @@ void tally_chunk(const chunk_values<Value> &values, unsigned shift, raw_counts &
 template <class Stored>
 class cell_adder {
 public:
-    void add(chunk_values<value_of<Stored>> &values) noexcept {
+    void add(chunk_values<value_of<Stored>>& values) noexcept {
         for (std::size_t n = 0; n < chunk; n += sum_lanes)
             for (std::size_t lane = 0; lane < sum_lanes; ++lane)
                 add(lane, values.i()[n + lane], values.q()[n + lane]);
@@ -202,13 +202,13 @@ private:
             std::max(unsigned_or_real(i < 0 ? -i : i), unsigned_or_real(q < 0 ? -q : q));
         component_[lane] = larger > component_[lane] ? larger : component_[lane];
     }
-    static double total(const lanes<sum> &parts) noexcept {
+    static double total(const lanes<sum>& parts) noexcept {
         sum whole = 0;
         for (const sum part : parts)
             whole += part;
         return static_cast<double>(whole);
     }
-    static double highest(const lanes<magnitude> &parts) noexcept {
+    static double highest(const lanes<magnitude>& parts) noexcept {
         return static_cast<double>(*std::max_element(parts.begin(), parts.end()));
     }
 
@@ -218,7 +218,7 @@ private:
 
 // Scaling by a power of two is exact, whatever the machine.
 template <class Value>
-void write_chunk(chunk_values<Value> &values, float scale, bool inverted,
+void write_chunk(chunk_values<Value>& values, float scale, bool inverted,
                  std::span<cf32> out) noexcept {
     const float q_scale = inverted ? -scale : scale;
     for (std::size_t n = 0; n < out.size(); ++n)
@@ -234,8 +234,8 @@ struct conversion {
 
 // One cell, or all there is when nothing is counted.
 template <class Stored>
-void convert_cell(const conversion &how, const std::byte *frames, std::span<cf32> out,
-                  sample_index first, std::size_t cell, raw_counts *counts) noexcept {
+void convert_cell(const conversion& how, const std::byte* frames, std::span<cf32> out,
+                  sample_index first, std::size_t cell, raw_counts* counts) noexcept {
     const bool plain = how.where.is_complex && !how.where.reversed &&
                        how.where.stride == 2 * sizeof(Stored) && how.where.i_offset == 0;
     const double scale = (how.where.is_complex ? 1.0 : 2.0) / full_scale<Stored>();
@@ -243,7 +243,7 @@ void convert_cell(const conversion &how, const std::byte *frames, std::span<cf32
     cell_adder<Stored> adder;
     for (std::size_t done = 0; done < out.size(); done += chunk) {
         const std::size_t count = std::min(chunk, out.size() - done);
-        const std::byte *const from = frames + done * how.where.stride;
+        const std::byte* const from = frames + done * how.where.stride;
         if (plain && count == chunk)
             read_plain_chunk<Stored>(from, values);
         else
@@ -261,11 +261,11 @@ void convert_cell(const conversion &how, const std::byte *frames, std::span<cf32
 
 } // namespace
 
-void rail_tally::merge(const rail_tally &other) noexcept {
+void rail_tally::merge(const rail_tally& other) noexcept {
     if (other.outermost < 0)
         return;
-    const rail_tally &outer = outermost >= other.outermost ? *this : other;
-    const rail_tally &inner = outermost >= other.outermost ? other : *this;
+    const rail_tally& outer = outermost >= other.outermost ? *this : other;
+    const rail_tally& inner = outermost >= other.outermost ? other : *this;
     rail_tally both = outer;
     const auto steps = static_cast<std::int64_t>(counts.size());
     for (std::int64_t k = 0; inner.outermost >= 0 && k < steps; ++k) {
@@ -283,7 +283,7 @@ void raw_counts::clear() noexcept {
     positive = negative = {};
 }
 
-sample_converter::sample_converter(const stream_facts &facts)
+sample_converter::sample_converter(const stream_facts& facts)
     : format_{facts.format}, lanes_{facts.lanes}, lane_{facts.lane},
       code_shift_{0}, swap_iq_{facts.swap_iq}, inverted_{facts.inverted} {
     assert(lane_ < lanes_);
@@ -299,14 +299,14 @@ void sample_converter::convert(std::span<const std::byte> frames,
 
 void sample_converter::convert(std::span<const std::byte> frames, std::span<cf32> out,
                                sample_index first, std::size_t cell,
-                               raw_counts &counts) const noexcept {
+                               raw_counts& counts) const noexcept {
     assert(cell > 0);
     run(frames, out, first, cell, &counts);
 }
 
 void sample_converter::run(std::span<const std::byte> frames, std::span<cf32> out,
                            sample_index first, std::size_t cell,
-                           raw_counts *counts) const noexcept {
+                           raw_counts* counts) const noexcept {
     const std::size_t sample_bytes = format_.sample_bytes();
     assert(frames.size() >= out.size() * sample_bytes * lanes_);
     const std::size_t lane_offset = lane_ * sample_bytes;

@@ -15,7 +15,7 @@ struct type_facts {
 constexpr std::array<type_facts, 8> types{
     {{"f32", 4}, {"f64", 8}, {"i32", 4}, {"i16", 2}, {"u32", 4}, {"u16", 2}, {"i8", 1}, {"u8", 1}}};
 
-const type_facts &facts_of(sample_type type) noexcept {
+const type_facts& facts_of(sample_type type) noexcept {
     return types[static_cast<std::size_t>(type)];
 }
 

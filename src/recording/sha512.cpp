@@ -26,17 +26,17 @@ struct sha512_hash::context {
             throw std::bad_alloc{};
         start();
     }
-    context(const context &) = delete;
-    context &operator=(const context &) = delete;
+    context(const context&) = delete;
+    context& operator=(const context&) = delete;
     ~context() { EVP_MD_CTX_free(evp); }
     void start() { expect_done(EVP_DigestInit_ex(evp, EVP_sha512(), nullptr)); }
 
-    EVP_MD_CTX *evp;
+    EVP_MD_CTX* evp;
 };
 
 sha512_hash::sha512_hash() : context_{std::make_unique<context>()} {}
-sha512_hash::sha512_hash(sha512_hash &&) noexcept = default;
-sha512_hash &sha512_hash::operator=(sha512_hash &&) noexcept = default;
+sha512_hash::sha512_hash(sha512_hash&&) noexcept = default;
+sha512_hash& sha512_hash::operator=(sha512_hash&&) noexcept = default;
 sha512_hash::~sha512_hash() = default;
 
 void sha512_hash::add(std::span<const std::byte> bytes) {

@@ -21,7 +21,7 @@ json number(double value) {
     return value;
 }
 
-void put_text(json &object, const char *key, const std::string &text) {
+void put_text(json& object, const char* key, const std::string& text) {
     if (!text.empty())
         object[key] = text;
 }
@@ -36,7 +36,7 @@ std::string shortest_utc(utc_time time) {
     return format_utc(time, 9);
 }
 
-json global_of(const sigmf_document &document) {
+json global_of(const sigmf_document& document) {
     json global;
     global["core:datatype"] = document.format.name();
     global["core:version"] = "1.2.5";
@@ -52,7 +52,7 @@ json global_of(const sigmf_document &document) {
     return global;
 }
 
-json capture_of(const sigmf_segment &segment) {
+json capture_of(const sigmf_segment& segment) {
     json capture;
     capture["core:sample_start"] = segment.sample_start;
     if (segment.global_index)
@@ -64,7 +64,7 @@ json capture_of(const sigmf_segment &segment) {
     return capture;
 }
 
-json annotation_of(const sigmf_annotation &remark) {
+json annotation_of(const sigmf_annotation& remark) {
     json annotation;
     annotation["core:sample_start"] = remark.sample_start;
     if (remark.sample_count)
@@ -79,15 +79,15 @@ json annotation_of(const sigmf_annotation &remark) {
 }
 
 template <class Item>
-[[maybe_unused]] bool ascending(const std::vector<Item> &items) {
-    return std::is_sorted(items.begin(), items.end(), [](const Item &a, const Item &b) {
+[[maybe_unused]] bool ascending(const std::vector<Item>& items) {
+    return std::is_sorted(items.begin(), items.end(), [](const Item& a, const Item& b) {
         return a.sample_start < b.sample_start;
     });
 }
 
 } // namespace
 
-std::string sigmf_text(const sigmf_document &document) {
+std::string sigmf_text(const sigmf_document& document) {
     assert(document.sample_rate_hz >= 1.0 && document.sample_rate_hz <= 1e12);
     assert(document.sha512.empty() || document.sha512.size() == 128);
     assert(ascending(document.segments) && ascending(document.annotations));
@@ -95,10 +95,10 @@ std::string sigmf_text(const sigmf_document &document) {
     json root;
     root["global"] = global_of(document);
     root["captures"] = json::array();
-    for (const auto &segment : document.segments)
+    for (const auto& segment : document.segments)
         root["captures"].push_back(capture_of(segment));
     root["annotations"] = json::array();
-    for (const auto &remark : document.annotations)
+    for (const auto& remark : document.annotations)
         root["annotations"].push_back(annotation_of(remark));
     return root.dump(4, ' ', false, json::error_handler_t::replace) + "\n";
 }

@@ -13,7 +13,7 @@ namespace tonewalk {
 
 /// Calls `use` with a value of the type that stores a component.
 template <class Use>
-decltype(auto) with_stored_type(sample_type type, Use &&use) {
+decltype(auto) with_stored_type(sample_type type, Use&& use) {
     switch (type) {
     case sample_type::f32:
         return use(float{});
@@ -56,7 +56,7 @@ using bits_of = std::conditional_t<
 
 /// One component as stored, at any alignment.
 template <class Stored>
-Stored load(const std::byte *at, bool reversed) noexcept {
+Stored load(const std::byte* at, bool reversed) noexcept {
     bits_of<Stored> bits;
     std::memcpy(&bits, at, sizeof bits);
     return std::bit_cast<Stored>(reversed ? byte_reversed(bits) : bits);

@@ -5,7 +5,7 @@ namespace tonewalk {
 
 std::optional<sample_index> stream_facts::samples() const noexcept {
     sample_index sum = 0;
-    for (const auto &stretch : stretches) {
+    for (const auto& stretch : stretches) {
         if (!stretch.count)
             return std::nullopt;
         sum += *stretch.count;
@@ -20,7 +20,7 @@ double stream_facts::duration_s() const noexcept {
 double stream_facts::span_s() const noexcept {
     if (stretches.empty() || !samples())
         return 0.0;
-    const auto &last = stretches.back();
+    const auto& last = stretches.back();
     const sample_index end = last.position + *last.count;
     return static_cast<double>(end - stretches.front().position) / sample_rate_hz;
 }

@@ -63,7 +63,8 @@ public:
     [[nodiscard]] virtual const stream_facts& facts() const noexcept = 0;
 
     /// Up to `samples` frames from the start of what is to be measured; kept until the source is
-    /// destroyed, and blocks still start at sample 0. A pipe reads them once and replays them.
+    /// destroyed, and blocks still start at sample 0. A pipe reads them once and replays them. Never past the
+    /// first stretch; before the first claim.
     virtual std::span<const std::byte> opening(std::size_t samples) = 0;
 
     /// Up to out.size()/frame_bytes frames at stored index `first`; seekable sources only. Returns frames read.
