@@ -60,7 +60,7 @@ double cosine_of_octant(double square) noexcept {
 random_stream::random_stream(std::uint64_t seed, std::uint64_t stream) noexcept {
     seed_spreader of_stream{stream};
     seed_spreader spreader{seed ^ of_stream.next()};
-    for (std::uint64_t &word : state_)
+    for (std::uint64_t& word : state_)
         word = spreader.next();
 }
 

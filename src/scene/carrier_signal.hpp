@@ -16,8 +16,8 @@ struct wave_group {
     std::vector<scene_wave> waves;
 };
 /// At least one; the single still wave of a carrier that names none.
-[[nodiscard]] std::vector<wave_group> wave_groups(const scene_carrier &);
-[[nodiscard]] double longest_delay_s(const scene_carrier &);
+[[nodiscard]] std::vector<wave_group> wave_groups(const scene_carrier&);
+[[nodiscard]] double longest_delay_s(const scene_carrier&);
 
 /// Wavelength at an absolute frequency; infinite where that is not known.
 [[nodiscard]] double wavelength_m(double frequency_hz) noexcept;
@@ -25,8 +25,8 @@ struct wave_group {
 /// One carrier as it reaches the receiver.
 class carrier_signal {
 public:
-    carrier_signal(const scene &, std::size_t carrier);
-    void tune(const carrier_tuning &);
+    carrier_signal(const scene&, std::size_t carrier);
+    void tune(const carrier_tuning&);
     /// Adds to out[i] what arrives at position first + i. Blocks ascend.
     void add(sample_index first, std::span<cf64> out);
 
@@ -36,7 +36,7 @@ private:
         std::vector<scene_wave> waves;
         wave_sum sum;
     };
-    void add_arrival(arrival &, sample_index first, std::span<cf64> out);
+    void add_arrival(arrival&, sample_index first, std::span<cf64> out);
 
     scene_path path_;
     double rate_hz_, amplitude_;

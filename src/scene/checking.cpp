@@ -16,17 +16,17 @@ constexpr double most_db = 300.0; // of any level: far beyond every format
 constexpr double most_samples = 1e15;
 constexpr double most_truth_points = 1e7;
 
-std::string item(const std::string &table, std::string_view name, std::size_t index) {
-    return fmt::format("{}{}{}[{}]", table, table.empty() ? "" : ".", name, index + 1);
+std::string item(const std::string& table, std::string_view name, std::size_t index) {
+    return fmt::format("{}{}{}[{}]", table, table.empty() ? "" : ".", name, index);
 }
 
 /// The rules of one table of the scene.
 class rules {
 public:
-    rules(const scene_complaint &complain, std::string table)
+    rules(const scene_complaint& complain, std::string table)
         : complain_{complain}, table_{std::move(table)} {}
 
-    [[nodiscard]] const std::string &table() const noexcept { return table_; }
+    [[nodiscard]] const std::string& table() const noexcept { return table_; }
     [[nodiscard]] rules inside(std::string_view name, std::size_t index) const {
         return {complain_, item(table_, name, index)};
     }
@@ -65,15 +65,15 @@ public:
     }
 
 private:
-    const scene_complaint &complain_;
+    const scene_complaint& complain_;
     std::string table_;
 };
 
-void check_on_times(const rules &rule, double start_s, double stop_s) {
+void check_on_times(const rules& rule, double start_s, double stop_s) {
     rule.need(start_s < stop_s, "stop_s", "is not after start_s", "give a later stop_s");
 }
 
-void check_tone(const rules &rule, const scene_tone &tone) {
+void check_tone(const rules& rule, const scene_tone& tone) {
     rule.above("frequency_hz", tone.frequency_hz, 0.0);
     rule.between("depth_percent", tone.depth_percent, 0.0, 1000.0);
     rule.finite("phase_deg", tone.phase_deg);
@@ -88,7 +88,7 @@ void check_tone(const rules &rule, const scene_tone &tone) {
     }
 }
 
-void check_waves(const rules &rule, const scene &whole, const scene_carrier &carrier) {
+void check_waves(const rules& rule, const scene& whole, const scene_carrier& carrier) {
     const bool moving = whole.path.speed_m_s != 0.0 || !whole.path.points.empty();
     rule.need(carrier.waves.empty() || !moving || whole.centre_hz, "wave",
               "has no wavelength: the path moves and no centre is known",
@@ -102,7 +102,7 @@ void check_waves(const rules &rule, const scene &whole, const scene_carrier &car
     }
 }
 
-void check_under_resonator(const rules &rule, const scene_carrier &carrier) {
+void check_under_resonator(const rules& rule, const scene_carrier& carrier) {
     constexpr std::string_view what = "cannot pass a resonator, which shapes tones and hum alone";
     rule.need(carrier.speech_percent == 0.0, "speech_percent", what,
               "take it or the resonator away");
@@ -113,9 +113,9 @@ void check_under_resonator(const rules &rule, const scene_carrier &carrier) {
                                     "take it or the resonator away");
 }
 
-void check_place(const rules &rule, const scene &whole, const scene_carrier &carrier) {
+void check_place(const rules& rule, const scene& whole, const scene_carrier& carrier) {
     bool somewhere = false;
-    for (const scene_stretch &stretch : scene_layout(whole))
+    for (const scene_stretch& stretch : scene_layout(whole))
         somewhere = somewhere || tuned(whole, carrier, stretch.centre_hz).has_value();
     const double least_hz = whole.format.is_complex ? -whole.rate_hz / 2.0 : 0.0;
     rule.need(
@@ -127,7 +127,7 @@ void check_place(const rules &rule, const scene &whole, const scene_carrier &car
               "puts the carrier at or below 0 Hz", "raise centre_hz or offset_hz");
 }
 
-void check_antennas(const rules &rule, const scene_carrier &carrier) {
+void check_antennas(const rules& rule, const scene_carrier& carrier) {
     if (carrier.polarization) {
         const rules field = rule.inside("polarization");
         field.between("axial_ratio_db", carrier.polarization->axial_ratio_db, 0.0, scene_beyond);
@@ -142,7 +142,7 @@ void check_antennas(const rules &rule, const scene_carrier &carrier) {
     }
 }
 
-void check_carrier(const rules &rule, const scene &whole, const scene_carrier &carrier) {
+void check_carrier(const rules& rule, const scene& whole, const scene_carrier& carrier) {
     rule.finite("offset_hz", carrier.offset_hz);
     rule.level("level_dbfs", carrier.level_dbfs);
     rule.finite("phase_deg", carrier.phase_deg);
@@ -171,8 +171,8 @@ void check_carrier(const rules &rule, const scene &whole, const scene_carrier &c
         check_under_resonator(rule, carrier);
 }
 
-void check_path(const rules &rule, const scene &whole) {
-    const scene_path &path = whole.path;
+void check_path(const rules& rule, const scene& whole) {
+    const scene_path& path = whole.path;
     rule.finite("speed_m_s", path.speed_m_s);
     rule.finite("begin_m", path.begin_m);
     rule.finite("rotation_deg_s", path.rotation_deg_s);
@@ -195,7 +195,7 @@ void check_path(const rules &rule, const scene &whole) {
     }
 }
 
-void check_gain(const rules &rule, const scene_receiver &receiver, double rate_hz) {
+void check_gain(const rules& rule, const scene_receiver& receiver, double rate_hz) {
     for (std::size_t k = 0; k < receiver.gain_steps.size(); ++k) {
         const rules step = rule.inside("gain_step", k);
         step.finite("time_s", receiver.gain_steps[k].time_s);
@@ -218,10 +218,10 @@ void check_gain(const rules &rule, const scene_receiver &receiver, double rate_h
                     receiver.gain_control->most_db);
 }
 
-void check_gaps(const rules &rule, const scene &whole) {
+void check_gaps(const rules& rule, const scene& whole) {
     double free_from_s = 0.0;
     for (std::size_t k = 0; k < whole.receiver.gaps.size(); ++k) {
-        const scene_gap &gap = whole.receiver.gaps[k];
+        const scene_gap& gap = whole.receiver.gaps[k];
         const rules lost = rule.inside("gap", k);
         lost.above("start_s", gap.start_s, free_from_s);
         lost.need(gap.samples > 0 || samples_in(gap.duration_s, whole.rate_hz) > 0, "duration_s",
@@ -234,8 +234,8 @@ void check_gaps(const rules &rule, const scene &whole) {
     }
 }
 
-void check_receiver(const rules &rule, const scene &whole) {
-    const scene_receiver &receiver = whole.receiver;
+void check_receiver(const rules& rule, const scene& whole) {
+    const scene_receiver& receiver = whole.receiver;
     rule.level("noise_dbfs_hz", receiver.noise_dbfs_hz);
     rule.level("compression_dbfs", receiver.compression_dbfs);
     rule.between("iq_gain_error_db", receiver.iq_gain_error_db, -20.0, 20.0);
@@ -269,7 +269,7 @@ void check_receiver(const rules &rule, const scene &whole) {
     }
 }
 
-void check_recording(const rules &rule, const scene &whole) {
+void check_recording(const rules& rule, const scene& whole) {
     rule.between("rate_hz", whole.rate_hz, 1.0, 1e12);
     if (whole.centre_hz)
         rule.between("centre_hz", *whole.centre_hz, -1e12, 1e12);
@@ -296,7 +296,7 @@ void check_recording(const rules &rule, const scene &whole) {
 
 } // namespace
 
-void check_scene(const scene &whole, const scene_complaint &complain) {
+void check_scene(const scene& whole, const scene_complaint& complain) {
     const rules top{complain, ""};
     check_recording(top, whole);
     check_path(top.inside("path"), whole);
@@ -305,8 +305,8 @@ void check_scene(const scene &whole, const scene_complaint &complain) {
         check_carrier(top.inside("carrier", k), whole, whole.carriers[k]);
 }
 
-void check_scene(const scene &whole, const std::string &where) {
-    check_scene(whole, [&](const std::string &table, std::string_view key, std::string_view what,
+void check_scene(const scene& whole, const std::string& where) {
+    check_scene(whole, [&](const std::string& table, std::string_view key, std::string_view what,
                            std::string_view mend) {
         return error{fault::malformed, what,
                      fmt::format("{}, {}{}{}", where, table, table.empty() ? "" : ".", key), mend};

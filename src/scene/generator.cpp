@@ -67,12 +67,12 @@ struct scene_generator::state {
     std::vector<cf64> block;
 };
 
-scene_generator::scene_generator(const scene &whole) {
+scene_generator::scene_generator(const scene& whole) {
     check_scene(whole, "scene");
     state_ = std::make_unique<state>(whole);
 }
-scene_generator::scene_generator(scene_generator &&) noexcept = default;
-scene_generator &scene_generator::operator=(scene_generator &&) noexcept = default;
+scene_generator::scene_generator(scene_generator&&) noexcept = default;
+scene_generator& scene_generator::operator=(scene_generator&&) noexcept = default;
 scene_generator::~scene_generator() = default;
 
 std::size_t scene_generator::render(std::span<cf64> out) {
@@ -89,7 +89,7 @@ std::size_t scene_generator::render_bytes(std::span<std::byte> out) {
     const std::size_t wanted = out.size() / sample_bytes;
     std::size_t made = 0;
     while (const std::size_t run = state_->run_ahead(wanted - made)) {
-        const scene_stretch &stretch = state_->stretches[state_->stretch];
+        const scene_stretch& stretch = state_->stretches[state_->stretch];
         const sample_index first = stretch.first + state_->done;
         state_->block.resize(run);
         state_->make(state_->block);
@@ -100,24 +100,28 @@ std::size_t scene_generator::render_bytes(std::span<std::byte> out) {
     return made;
 }
 
-double scene_generator::receiver_gain_db() const noexcept {
-    const bool ended = state_->stretch == state_->stretches.size();
-    const scene_stretch &stretch =
-        state_->stretches[ended ? state_->stretches.size() - 1 : state_->stretch];
-    const sample_index position = stretch.position + (ended ? stretch.count : state_->done);
-    return state_->receiver.controlled_gain_db() +
-           stepped_gain_db(state_->whole.receiver,
-                           static_cast<double>(position) / state_->whole.rate_hz);
+sample_index scene_generator::position() const {
+    const std::vector<scene_stretch>& stretches = state_->stretches;
+    const std::size_t here = state_->stretch;
+    if (here == stretches.size())
+        return stretches.back().position + stretches.back().count;
+    if (state_->done == stretches[here].count && here + 1 < stretches.size())
+        return stretches[here + 1].position;
+    return stretches[here].position + state_->done;
 }
 
-std::vector<cf64> render_samples(const scene &whole) {
+double scene_generator::controlled_gain_db() const noexcept {
+    return state_->receiver.controlled_gain_db();
+}
+
+std::vector<cf64> render_samples(const scene& whole) {
     scene_generator generator{whole};
     std::vector<cf64> samples(static_cast<std::size_t>(stored_samples(whole)));
     generator.render(samples);
     return samples;
 }
 
-std::vector<std::byte> render_bytes(const scene &whole) {
+std::vector<std::byte> render_bytes(const scene& whole) {
     scene_generator generator{whole};
     std::vector<std::byte> bytes(static_cast<std::size_t>(stored_samples(whole)) *
                                  whole.format.sample_bytes());

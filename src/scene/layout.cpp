@@ -13,15 +13,15 @@ struct lost_run {
     sample_index position, count;
 };
 
-std::vector<lost_run> lost_runs(const scene &whole) {
+std::vector<lost_run> lost_runs(const scene& whole) {
     std::vector<lost_run> runs;
-    for (const scene_gap &gap : whole.receiver.gaps)
+    for (const scene_gap& gap : whole.receiver.gaps)
         runs.push_back({sample_at(gap.start_s, whole.rate_hz),
                         gap.samples > 0 ? gap.samples : samples_in(gap.duration_s, whole.rate_hz)});
     return runs;
 }
 
-std::vector<scene_segment> segments_of(const scene &whole) {
+std::vector<scene_segment> segments_of(const scene& whole) {
     if (!whole.segments.empty())
         return whole.segments;
     return {scene_segment{.duration_s = whole.duration_s, .samples = whole.samples}};
@@ -30,9 +30,9 @@ std::vector<scene_segment> segments_of(const scene &whole) {
 /// Lays segments along the time line and cuts them at the gaps.
 class line_up {
 public:
-    explicit line_up(const scene &whole) : whole_{whole}, lost_{lost_runs(whole)} {}
+    explicit line_up(const scene& whole) : whole_{whole}, lost_{lost_runs(whole)} {}
 
-    void add(const scene_segment &segment) {
+    void add(const scene_segment& segment) {
         position_ += samples_in(segment.lost_s, whole_.rate_hz);
         const sample_index begin = position_;
         sample_index left =
@@ -53,7 +53,7 @@ public:
     [[nodiscard]] std::vector<scene_stretch> take() { return std::move(stretches_); }
 
 private:
-    void append(const scene_segment &segment, sample_index begin, sample_index run) {
+    void append(const scene_segment& segment, sample_index begin, sample_index run) {
         const std::optional<utc_time> origin =
             segment.start_utc ? segment.start_utc : whole_.start_utc;
         const sample_index since = segment.start_utc ? position_ - begin : position_;
@@ -66,7 +66,7 @@ private:
         position_ += run;
     }
 
-    const scene &whole_;
+    const scene& whole_;
     std::vector<lost_run> lost_;
     std::size_t next_ = 0;
     sample_index first_ = 0, position_ = 0;
@@ -75,22 +75,22 @@ private:
 
 } // namespace
 
-std::vector<scene_stretch> scene_layout(const scene &whole) {
+std::vector<scene_stretch> scene_layout(const scene& whole) {
     line_up line{whole};
-    for (const scene_segment &segment : segments_of(whole))
+    for (const scene_segment& segment : segments_of(whole))
         line.add(segment);
     return line.take();
 }
 
-sample_index stored_samples(const scene &whole) {
+sample_index stored_samples(const scene& whole) {
     sample_index sum = 0;
-    for (const scene_segment &segment : segments_of(whole))
+    for (const scene_segment& segment : segments_of(whole))
         sum +=
             segment.samples > 0 ? segment.samples : samples_in(segment.duration_s, whole.rate_hz);
     return sum;
 }
 
-double scene_span_s(const scene &whole) {
+double scene_span_s(const scene& whole) {
     const std::vector<scene_stretch> stretches = scene_layout(whole);
     return stretches.empty()
                ? 0.0
@@ -98,19 +98,19 @@ double scene_span_s(const scene &whole) {
                      whole.rate_hz;
 }
 
-double farthest_sideband_hz(const scene_carrier &carrier) {
+double farthest_sideband_hz(const scene_carrier& carrier) {
     double farthest = carrier.speech_percent > 0.0 ? speech_like::highest_hz : 0.0;
-    for (const scene_tone &tone : carrier.tones) {
+    for (const scene_tone& tone : carrier.tones) {
         farthest = std::max(farthest, tone.frequency_hz);
-        for (const scene_harmonic &each : tone.harmonics)
+        for (const scene_harmonic& each : tone.harmonics)
             farthest = std::max(farthest, tone.frequency_hz * each.order);
     }
-    for (const scene_hum &each : carrier.hum)
+    for (const scene_hum& each : carrier.hum)
         farthest = std::max(farthest, each.frequency_hz);
     return farthest;
 }
 
-std::optional<carrier_tuning> tuned(const scene &whole, const scene_carrier &carrier,
+std::optional<carrier_tuning> tuned(const scene& whole, const scene_carrier& carrier,
                                     std::optional<double> centre_hz) {
     const double home_hz = whole.centre_hz.value_or(0.0);
     const double here_hz = centre_hz.value_or(home_hz);

@@ -26,13 +26,13 @@ struct modulation_line {
 };
 
 /// A carrier's tones with their harmonics, and its hum, `delay_s` late.
-[[nodiscard]] std::vector<modulation_line> modulation_lines(const scene_carrier &, double rate_hz,
+[[nodiscard]] std::vector<modulation_line> modulation_lines(const scene_carrier&, double rate_hz,
                                                             double delay_s);
 
 /// The modulating waveform of one carrier.
 class modulation {
 public:
-    modulation(const scene &, std::size_t carrier, double delay_s);
+    modulation(const scene&, std::size_t carrier, double delay_s);
     /// out[i] = envelope relative to the unmodulated carrier at position first + i: signed where
     /// the carrier folds, never negative where it is pinched off.
     void envelope(sample_index first, std::span<double> out) noexcept;

@@ -15,17 +15,17 @@ double scene_motion::at(double time_s) noexcept {
     return curve_.empty() ? begin_ + speed_ * time_s : curve_.at(time_s);
 }
 
-scene_motion position_motion(const scene_path &path) {
+scene_motion position_motion(const scene_path& path) {
     return {path.begin_m, path.speed_m_s, path.points};
 }
 
-scene_motion angle_motion(const scene_path &path) {
+scene_motion angle_motion(const scene_path& path) {
     return {path.begin_deg, path.rotation_deg_s, path.angles};
 }
 
-wave_sum::wave_sum(std::span<const scene_wave> waves, const scene_path &path, double wavelength_m)
+wave_sum::wave_sum(std::span<const scene_wave> waves, const scene_path& path, double wavelength_m)
     : position_{position_motion(path)} {
-    for (const scene_wave &each : waves)
+    for (const scene_wave& each : waves)
         waves_.push_back({each.amplitude,
                           unit_vector(phase_from_deg(each.direction_deg)).real() / wavelength_m,
                           phase_from_deg(each.phase_deg)});
@@ -34,16 +34,16 @@ wave_sum::wave_sum(std::span<const scene_wave> waves, const scene_path &path, do
 cf64 wave_sum::at(double time_s) noexcept {
     const double position_m = position_.at(time_s);
     cf64 sum{};
-    for (const wave &each : waves_)
+    for (const wave& each : waves_)
         sum += each.amplitude *
                unit_vector(each.phase - phase_from_turns(position_m * each.turns_per_m));
     return sum;
 }
 
-common_factor::common_factor(const scene_carrier &carrier, const scene_path &path)
+common_factor::common_factor(const scene_carrier& carrier, const scene_path& path)
     : fades_{carrier.fades}, angle_{angle_motion(path)} {
     if (carrier.polarization) {
-        const scene_polarization &field = *carrier.polarization;
+        const scene_polarization& field = *carrier.polarization;
         const double minor_to_major = amplitude_from_db(-field.axial_ratio_db);
         const double major = 1.0 / std::sqrt(1.0 + minor_to_major * minor_to_major);
         ellipse_ = ellipse{major, minor_to_major * major, field.tilt_deg,
@@ -73,14 +73,14 @@ cf64 common_factor::at(double time_s) noexcept {
     return factor;
 }
 
-cf64 common_factor::probe(const ellipse &field, double angle_deg) noexcept {
+cf64 common_factor::probe(const ellipse& field, double angle_deg) noexcept {
     const auto [sine, cosine] = exact_turn(phase_from_turns((angle_deg - field.tilt_deg) / 360.0));
     const cf64 wanted{field.major * cosine, field.minor * sine};
     const cf64 crossed{-field.major * sine, field.minor * cosine}; // a quarter turn on
     return wanted + product(field.leak, crossed);
 }
 
-double common_factor::pattern(const lobe &shape, double angle_deg) noexcept {
+double common_factor::pattern(const lobe& shape, double angle_deg) noexcept {
     const auto [sine, cosine] =
         exact_turn(phase_from_turns((angle_deg - shape.bearing_deg) / 360.0));
     if (shape.kind == scene_pattern::shape::cardioid)
@@ -90,16 +90,16 @@ double common_factor::pattern(const lobe &shape, double angle_deg) noexcept {
     return exact_turn(phase_from_turns(0.25 * sine)).cosine / cosine; // cos(90 deg x sin a) / cos a
 }
 
-resonance::resonance(const scene_resonator &path)
+resonance::resonance(const scene_resonator& path)
     : leak_{path.leak * unit_vector(phase_from_deg(path.leak_phase_deg))} {
-    for (const scene_mode &each : path.modes)
+    for (const scene_mode& each : path.modes)
         modes_.push_back({each.frequency_hz, 2.0 * each.q_loaded / each.frequency_hz,
                           each.amplitude * unit_vector(phase_from_deg(each.phase_deg))});
 }
 
 cf64 resonance::at(double frequency_hz) const noexcept {
     cf64 sum = leak_;
-    for (const mode &each : modes_) {
+    for (const mode& each : modes_) {
         const double x = each.steepness * (frequency_hz - each.frequency_hz);
         sum += product(each.strength, cf64{1.0, -x}) / (1.0 + x * x);
     }

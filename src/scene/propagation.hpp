@@ -22,14 +22,14 @@ private:
     double begin_, speed_;
     scene_curve curve_;
 };
-[[nodiscard]] scene_motion position_motion(const scene_path &); ///< metres
-[[nodiscard]] scene_motion angle_motion(const scene_path &);    ///< degrees
+[[nodiscard]] scene_motion position_motion(const scene_path&); ///< metres
+[[nodiscard]] scene_motion angle_motion(const scene_path&);    ///< degrees
 
 /// Waves with one delay: the complex sum of their amplitudes at the moving point.
 class wave_sum {
 public:
     /// `wavelength_m` at the carrier; infinite where no centre is known and nothing moves.
-    wave_sum(std::span<const scene_wave>, const scene_path &, double wavelength_m);
+    wave_sum(std::span<const scene_wave>, const scene_path&, double wavelength_m);
     [[nodiscard]] cf64 at(double time_s) noexcept;
     [[nodiscard]] bool constant() const noexcept { return !position_.moves(); }
 
@@ -45,7 +45,7 @@ private:
 /// What multiplies all waves of a carrier alike: fades, polarization, pattern.
 class common_factor {
 public:
-    common_factor(const scene_carrier &, const scene_path &);
+    common_factor(const scene_carrier&, const scene_path&);
     [[nodiscard]] cf64 at(double time_s) noexcept;
     [[nodiscard]] bool constant() const noexcept;
 
@@ -59,8 +59,8 @@ private:
         scene_pattern::shape kind;
         double bearing_deg, back; ///< back: weight of the cosine
     };
-    [[nodiscard]] static cf64 probe(const ellipse &, double angle_deg) noexcept;
-    [[nodiscard]] static double pattern(const lobe &, double angle_deg) noexcept;
+    [[nodiscard]] static cf64 probe(const ellipse&, double angle_deg) noexcept;
+    [[nodiscard]] static double pattern(const lobe&, double angle_deg) noexcept;
 
     std::optional<ellipse> ellipse_;
     std::optional<lobe> lobe_;
@@ -71,7 +71,7 @@ private:
 /// Response of the path's poles at an absolute frequency.
 class resonance {
 public:
-    explicit resonance(const scene_resonator &);
+    explicit resonance(const scene_resonator&);
     [[nodiscard]] cf64 at(double frequency_hz) const noexcept;
 
 private:

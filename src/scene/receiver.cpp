@@ -17,7 +17,7 @@ constexpr double most_excess = 8.0; // how far one sample may pull the gain cont
 /// White over the recorded band: rate wide for complex samples; half of that, and one component of
 /// the analytic signal, for real ones. Both give the same rms per Hz of what is later taken as
 /// analytic.
-double component_noise_rms(const scene &whole) noexcept {
+double component_noise_rms(const scene& whole) noexcept {
     const double band_hz = whole.format.is_complex ? whole.rate_hz : whole.rate_hz / 2.0;
     return amplitude_from_db(whole.receiver.noise_dbfs_hz) * std::sqrt(band_hz / 2.0);
 }
@@ -37,15 +37,15 @@ double amplitude_or_infinity(double db) noexcept {
 
 } // namespace
 
-double stepped_gain_db(const scene_receiver &receiver, double time_s) noexcept {
+double stepped_gain_db(const scene_receiver& receiver, double time_s) noexcept {
     double gain_db = 0.0;
-    for (const scene_gain_step &step : receiver.gain_steps)
+    for (const scene_gain_step& step : receiver.gain_steps)
         if (step.time_s <= time_s)
             gain_db = step.gain_db;
     return gain_db;
 }
 
-receiver_chain::receiver_chain(const scene &whole)
+receiver_chain::receiver_chain(const scene& whole)
     : settings_{whole.receiver}, rate_hz_{whole.rate_hz}, noise_{whole.seed, noise_stream},
       noise_rms_{component_noise_rms(whole)}, saturation_power_{saturation_power(
                                                   whole.receiver.compression_dbfs)},
@@ -67,7 +67,7 @@ receiver_chain::receiver_chain(const scene &whole)
     i_gain_ = gain / wanted;
     q_gain_ = skew.real() / gain / wanted;
     q_from_i_ = skew.imag() / gain / wanted;
-    for (const scene_spur &each : settings_.spurs)
+    for (const scene_spur& each : settings_.spurs)
         spurs_.push_back({amplitude_from_db(each.level_dbfs), phase_step(each.offset_hz, rate_hz_),
                           phase_from_deg(each.phase_deg)});
 }
@@ -87,20 +87,20 @@ void receiver_chain::process(sample_index first_position, std::span<cf64> sample
 }
 
 void receiver_chain::add_noise(std::span<cf64> samples) noexcept {
-    for (cf64 &z : samples) {
+    for (cf64& z : samples) {
         const double in_phase = noise_.gaussian();
         z += noise_rms_ * cf64{in_phase, noise_.gaussian()};
     }
 }
 
 void receiver_chain::step_gain(sample_index first, std::span<cf64> samples) noexcept {
-    const auto &steps = settings_.gain_steps;
+    const auto& steps = settings_.gain_steps;
     for (std::size_t k = 0; k < steps.size(); ++k) {
         const double until_s = k + 1 < steps.size() ? steps[k + 1].time_s : scene_never;
         const block_part on = part_of_block(span_between(steps[k].time_s, until_s, 0.0, rate_hz_),
                                             first, samples.size());
         const double gain = amplitude_from_db(steps[k].gain_db);
-        for (cf64 &z : samples.subspan(on.begin, on.end - on.begin))
+        for (cf64& z : samples.subspan(on.begin, on.end - on.begin))
             z *= gain;
     }
 }
@@ -108,7 +108,7 @@ void receiver_chain::step_gain(sample_index first, std::span<cf64> samples) noex
 /// The logarithm of the gain follows half the relative excess of power, so that near the target an
 /// error dies away with the time constant.
 void receiver_chain::control_gain(std::span<cf64> samples) noexcept {
-    for (cf64 &z : samples) {
+    for (cf64& z : samples) {
         z *= gain_;
         const double excess = std::min(squared_magnitude(z) / target_power_ - 1.0, most_excess);
         gain_ *= 1.0 - (excess > 0.0 ? attack_ : release_) * excess;
@@ -118,23 +118,23 @@ void receiver_chain::control_gain(std::span<cf64> samples) noexcept {
 
 void receiver_chain::distort(sample_index first, std::span<cf64> samples) noexcept {
     if (!std::isinf(saturation_power_))
-        for (cf64 &z : samples)
+        for (cf64& z : samples)
             z /= std::sqrt(1.0 + squared_magnitude(z) / saturation_power_);
     if (settings_.iq_gain_error_db != 0.0 || settings_.iq_phase_error_deg != 0.0)
-        for (cf64 &z : samples)
+        for (cf64& z : samples)
             z = {i_gain_ * z.real(), q_gain_ * z.imag() + q_from_i_ * z.real()};
     if (dc_ != cf64{})
-        for (cf64 &z : samples)
+        for (cf64& z : samples)
             z += dc_;
-    for (const spur &line : spurs_) {
+    for (const spur& line : spurs_) {
         std::uint64_t phase = line.phase + line.step * static_cast<std::uint64_t>(first);
-        for (cf64 &z : samples) {
+        for (cf64& z : samples) {
             z += line.amplitude * unit_vector(phase);
             phase += line.step;
         }
     }
     if (!std::isinf(clip_))
-        for (cf64 &z : samples)
+        for (cf64& z : samples)
             z = {std::clamp(z.real(), -clip_, clip_), std::clamp(z.imag(), -clip_, clip_)};
 }
 

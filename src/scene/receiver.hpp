@@ -12,13 +12,13 @@
 namespace tonewalk {
 
 /// Total gain of the steps at a time, dB; 0 before the first.
-[[nodiscard]] double stepped_gain_db(const scene_receiver &, double time_s) noexcept;
+[[nodiscard]] double stepped_gain_db(const scene_receiver&, double time_s) noexcept;
 
 /// From the field to the converter's input, sample by sample in order: noise, gain, compression, IQ
 /// errors, DC, spurs, clipping.
 class receiver_chain {
 public:
-    explicit receiver_chain(const scene &);
+    explicit receiver_chain(const scene&);
     void process(sample_index first_position, std::span<cf64> samples) noexcept;
     [[nodiscard]] double controlled_gain_db() const noexcept; ///< of the gain control, now
 

@@ -37,7 +37,7 @@ void speech_like::enter(std::int64_t slot) noexcept {
     shape(draw);
 }
 
-void speech_like::shape(random_stream &draw) noexcept {
+void speech_like::shape(random_stream& draw) noexcept {
     const double first_hz = draw.uniform(300.0, 800.0), second_hz = draw.uniform(900.0, 2300.0);
     const double loudness = draw.uniform(0.5, 1.0);
     const double top_hz = now_.pitch_hz * 1.33;
@@ -50,7 +50,7 @@ void speech_like::shape(random_stream &draw) noexcept {
         now_.weights[now_.partials++] = weight;
         total += weight;
     }
-    for (double &weight : now_.weights)
+    for (double& weight : now_.weights)
         weight *= loudness / total;
 }
 

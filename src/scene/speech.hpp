@@ -29,7 +29,7 @@ private:
         std::array<double, most_partials> weights; // magnitudes sum to the loudness
     };
     void enter(std::int64_t slot) noexcept;
-    void shape(random_stream &) noexcept;
+    void shape(random_stream&) noexcept;
 
     std::uint64_t seed_, voice_;
     std::int64_t slot_;

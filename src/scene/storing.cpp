@@ -36,7 +36,7 @@ std::uint64_t float_code(sample_type type, double value) noexcept {
 
 } // namespace
 
-sample_store::sample_store(const scene &whole)
+sample_store::sample_store(const scene& whole)
     : format_{whole.format}, component_bytes_{whole.format.component_bytes()}, scale_{1.0},
       noise_lsb_rms_{whole.receiver.noise_lsb_rms}, middle_{0},
       noise_{whole.seed, converter_noise_stream}, non_finite_{whole.receiver.non_finite} {
@@ -57,7 +57,7 @@ std::uint64_t sample_store::code(double component) noexcept {
     return static_cast<std::uint64_t>(static_cast<std::int64_t>(rounded)) + middle_;
 }
 
-void sample_store::put(std::uint64_t code, std::byte *to) const noexcept {
+void sample_store::put(std::uint64_t code, std::byte* to) const noexcept {
     for (std::size_t k = 0; k < component_bytes_; ++k) {
         const std::size_t place = format_.big_endian ? component_bytes_ - 1 - k : k;
         to[k] = static_cast<std::byte>((code >> (8U * place)) & 0xffU);
@@ -66,8 +66,8 @@ void sample_store::put(std::uint64_t code, std::byte *to) const noexcept {
 
 void sample_store::store(sample_index first, std::span<const cf64> samples,
                          std::span<std::byte> bytes) {
-    std::byte *to = bytes.data();
-    for (const cf64 &z : samples) {
+    std::byte* to = bytes.data();
+    for (const cf64& z : samples) {
         put(code(z.real()), to);
         to += component_bytes_;
         if (!format_.is_complex)
@@ -81,7 +81,7 @@ void sample_store::store(sample_index first, std::span<const cf64> samples,
 
 void sample_store::spoil(sample_index first, std::span<std::byte> bytes) const {
     const std::size_t sample_bytes = format_.sample_bytes();
-    for (const scene_non_finite &run : non_finite_) {
+    for (const scene_non_finite& run : non_finite_) {
         const std::uint64_t bad = float_code(format_.type, value_of(run.value));
         const block_part hit =
             part_of_block({run.first, run.first + run.count}, first, bytes.size() / sample_bytes);

@@ -16,13 +16,13 @@ namespace tonewalk {
 /// half to even and held at their own ends; unsigned ones are raised by 2^(bits-1).
 class sample_store {
 public:
-    explicit sample_store(const scene &);
+    explicit sample_store(const scene&);
     /// bytes.size() == samples.size() x the sample's bytes; samples[0] is stored index `first`.
     void store(sample_index first, std::span<const cf64> samples, std::span<std::byte> bytes);
 
 private:
     [[nodiscard]] std::uint64_t code(double component) noexcept;
-    void put(std::uint64_t code, std::byte *to) const noexcept;
+    void put(std::uint64_t code, std::byte* to) const noexcept;
     void spoil(sample_index first, std::span<std::byte> bytes) const;
 
     sample_format format_;

@@ -38,7 +38,7 @@ inline position_span span_between(double start_s, double stop_s, double delay_s,
 struct block_part {
     std::size_t begin = 0, end = 0;
 };
-inline block_part part_of_block(const position_span &on, sample_index first, std::size_t count) {
+inline block_part part_of_block(const position_span& on, sample_index first, std::size_t count) {
     const auto last = first + static_cast<sample_index>(count);
     const sample_index begin = std::clamp(on.begin, first, last);
     const sample_index end = std::clamp(on.end, begin, last);
@@ -62,10 +62,10 @@ inline double scene_curve::at(double time_s) noexcept {
         --cursor_;
     while (cursor_ + 1 < points_.size() && points_[cursor_ + 1].time_s <= time_s)
         ++cursor_;
-    const scene_point &from = points_[cursor_];
+    const scene_point& from = points_[cursor_];
     if (time_s <= from.time_s || cursor_ + 1 == points_.size())
         return from.value;
-    const scene_point &to = points_[cursor_ + 1];
+    const scene_point& to = points_[cursor_ + 1];
     return from.value +
            (to.value - from.value) * ((time_s - from.time_s) / (to.time_s - from.time_s));
 }

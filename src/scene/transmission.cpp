@@ -14,14 +14,14 @@ constexpr std::uint64_t phase_walk_stream = 0x5057'0000'0000U;
 
 /// Rms step per sample of a phase walk whose single-side density is `level_dbc_hz` at `offset_hz`:
 /// the density of a walk growing by D rad^2/s is D/(2 pi f)^2.
-double walk_step_turns(const scene_carrier &carrier, double rate_hz) noexcept {
+double walk_step_turns(const scene_carrier& carrier, double rate_hz) noexcept {
     const double density_amplitude = amplitude_from_db(carrier.phase_noise_dbc_hz);
     return carrier.phase_noise_offset_hz * density_amplitude / std::sqrt(rate_hz);
 }
 
 } // namespace
 
-frequency_course::frequency_course(const scene_carrier &carrier) noexcept
+frequency_course::frequency_course(const scene_carrier& carrier) noexcept
     : drift_hz_s_{carrier.drift_hz_s}, wobble_hz_{carrier.wobble_hz},
       wobble_period_s_{carrier.wobble_period_s} {}
 
@@ -35,7 +35,7 @@ double frequency_course::turns(double time_s) const noexcept {
     return 0.5 * drift_hz_s_ * time_s * time_s + wobble_hz_ * wobble_period_s_ / two_pi * swing;
 }
 
-phase_walk::phase_walk(const scene &whole, std::size_t carrier,
+phase_walk::phase_walk(const scene& whole, std::size_t carrier,
                        sample_index history_samples) noexcept
     : random_{whole.seed, phase_walk_stream + carrier},
       step_turns_{walk_step_turns(whole.carriers[carrier], whole.rate_hz)},
@@ -50,7 +50,7 @@ double phase_walk::turns_at(double position) noexcept {
     return before_ + (after_ - before_) * (position - whole);
 }
 
-transmission::transmission(const scene &whole, std::size_t carrier, double delay_s,
+transmission::transmission(const scene& whole, std::size_t carrier, double delay_s,
                            double history_s)
     : rate_hz_{whole.rate_hz}, delay_s_{delay_s}, start_phase_{phase_from_deg(
                                                       whole.carriers[carrier].phase_deg)},
@@ -125,7 +125,7 @@ void transmission::shape_lines(sample_index first, std::span<cf64> out) noexcept
             carrier = resonance_->at(frequency_at(first + static_cast<sample_index>(k)));
         out[k] = carrier;
     }
-    for (const modulation_line &line : lines_) {
+    for (const modulation_line& line : lines_) {
         const block_part on = part_of_block(line.on, first, out.size());
         sample_index position = first + static_cast<sample_index>(on.begin);
         cf64 above{}, below{};

@@ -17,7 +17,7 @@ namespace tonewalk {
 /// How a carrier's frequency moves about its nominal value.
 class frequency_course {
 public:
-    explicit frequency_course(const scene_carrier &) noexcept;
+    explicit frequency_course(const scene_carrier&) noexcept;
     [[nodiscard]] bool moves() const noexcept { return drift_hz_s_ != 0.0 || wobble_hz_ != 0.0; }
     [[nodiscard]] double deviation_hz(double time_s) const noexcept;
     [[nodiscard]] double turns(double time_s) const noexcept; ///< the deviation's integral from 0
@@ -30,7 +30,7 @@ private:
 class phase_walk {
 public:
     /// Starts `history_samples` before position 0.
-    phase_walk(const scene &, std::size_t carrier, sample_index history_samples) noexcept;
+    phase_walk(const scene&, std::size_t carrier, sample_index history_samples) noexcept;
     [[nodiscard]] double turns_at(double position) noexcept;
 
 private:
@@ -45,7 +45,7 @@ private:
 class transmission {
 public:
     /// `history_s`: the longest delay of this carrier's waves, so that all see one phase walk.
-    transmission(const scene &, std::size_t carrier, double delay_s, double history_s);
+    transmission(const scene&, std::size_t carrier, double delay_s, double history_s);
     /// Where the carrier stands now: from the centre, and absolutely (0 where no centre is known).
     void tune(double offset_hz, double frequency_hz) noexcept;
     /// out[i] at position first + i; zero where off the air. Blocks ascend.

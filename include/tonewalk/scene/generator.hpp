@@ -20,9 +20,9 @@ namespace tonewalk {
 ///           the scene itself
 class scene_generator {
 public:
-    explicit scene_generator(const scene &); ///< copies; throws error{malformed} (check_scene)
-    scene_generator(scene_generator &&) noexcept;
-    scene_generator &operator=(scene_generator &&) noexcept;
+    explicit scene_generator(const scene&); ///< copies; throws error{malformed} (check_scene)
+    scene_generator(scene_generator&&) noexcept;
+    scene_generator& operator=(scene_generator&&) noexcept;
     ~scene_generator();
 
     /// The next samples, full scale = 1.0, as they are before they are stored (clipped, not
@@ -32,14 +32,15 @@ public:
     /// The next samples as stored; out.size() a multiple of the sample's bytes. Returns samples.
     /// One object serves either render or render_bytes.
     std::size_t render_bytes(std::span<std::byte> out);
-    [[nodiscard]] double receiver_gain_db() const noexcept; ///< steps and gain control, now
+    [[nodiscard]] sample_index position() const; ///< of the next sample, lost ones counted
+    [[nodiscard]] double controlled_gain_db() const noexcept; ///< of the gain control, now
 
 private:
     struct state;
     std::unique_ptr<state> state_;
 };
 
-[[nodiscard]] std::vector<cf64> render_samples(const scene &);    ///< all of it
-[[nodiscard]] std::vector<std::byte> render_bytes(const scene &); ///< all of it, as stored
+[[nodiscard]] std::vector<cf64> render_samples(const scene&);    ///< all of it
+[[nodiscard]] std::vector<std::byte> render_bytes(const scene&); ///< all of it, as stored
 
 } // namespace tonewalk

@@ -12,8 +12,8 @@ namespace tonewalk {
 
 /// Reads scene.toml; every key in docs/jobs/make.md. Throws error{unreadable, malformed} naming
 /// file, line, key and the mend.
-[[nodiscard]] scene read_scene(const std::filesystem::path &);
-[[nodiscard]] scene parse_scene(std::string_view toml, const std::string &name);
+[[nodiscard]] scene read_scene(const std::filesystem::path&);
+[[nodiscard]] scene parse_scene(std::string_view toml, const std::string& name);
 
 struct made_recording {
     std::filesystem::path data, metadata, truth;
@@ -23,7 +23,7 @@ struct made_recording {
 };
 /// Writes BASE.sigmf-data, BASE.sigmf-meta and BASE.truth.json, all whole or none of them. Throws
 /// error{unwritable}.
-made_recording make_recording(const scene &, const std::filesystem::path &base, bool force = false,
-                              const run_control & = {});
+made_recording make_recording(const scene&, const std::filesystem::path& base, bool force = false,
+                              const run_control& = {});
 
 } // namespace tonewalk

@@ -140,8 +140,8 @@ struct scene_gain_step {
     double gain_db = 0.0;
 };
 
-/// Automatic gain control, feedback: holds the output's power at the target. It starts from begin_db
-/// at time 0 and waits during gaps.
+/// Automatic gain control, feedback: holds the output's power at the target. It starts from
+/// begin_db at time 0 and waits during gaps.
 struct scene_gain_control {
     double target_dbfs = -20.0;
     double attack_s = 0.01; ///< time constant while the output is too strong
@@ -221,10 +221,10 @@ struct scene_stretch {
     std::optional<double> centre_hz;
     std::optional<utc_time> start_utc; ///< of its first sample
 };
-[[nodiscard]] std::vector<scene_stretch> scene_layout(const scene &);
-[[nodiscard]] sample_index stored_samples(const scene &);
+[[nodiscard]] std::vector<scene_stretch> scene_layout(const scene&);
+[[nodiscard]] sample_index stored_samples(const scene&);
 
 /// Throws error{malformed} at the first value that cannot be made; `where` begins its line.
-void check_scene(const scene &, const std::string &where);
+void check_scene(const scene&, const std::string& where);
 
 } // namespace tonewalk
