@@ -41,7 +41,7 @@ int subtype_of(audio_sample sample) {
     return 0;
 }
 
-SF_INFO info_of(const audio_file::config &wanted, audio_container container) {
+SF_INFO info_of(const audio_file::config& wanted, audio_container container) {
     SF_INFO info{};
     info.samplerate = static_cast<int>(wanted.rate_hz);
     info.channels = 1;
@@ -50,7 +50,7 @@ SF_INFO info_of(const audio_file::config &wanted, audio_container container) {
     return info;
 }
 
-void refuse_what_does_not_fit(const audio_file::config &wanted, audio_container container) {
+void refuse_what_does_not_fit(const audio_file::config& wanted, audio_container container) {
     const std::string where = valid_utf8(wanted.target.string());
     if (container == audio_container::flac && wanted.sample == audio_sample::float32)
         throw error{fault::bad_request, "FLAC holds no floating-point samples", where,
@@ -75,22 +75,22 @@ struct descriptor_io {
     int descriptor = -1;
     int failure = 0; ///< errno
 
-    static descriptor_io &of(void *self) { return *static_cast<descriptor_io *>(self); }
-    static sf_count_t length(void *self) {
+    static descriptor_io& of(void* self) { return *static_cast<descriptor_io*>(self); }
+    static sf_count_t length(void* self) {
         const sf_count_t here = tell(self);
         const sf_count_t end = seek(0, SEEK_END, self);
         seek(here, SEEK_SET, self);
         return end;
     }
-    static sf_count_t seek(sf_count_t offset, int whence, void *self) {
+    static sf_count_t seek(sf_count_t offset, int whence, void* self) {
         return ::lseek(of(self).descriptor, offset, whence);
     }
-    static sf_count_t tell(void *self) { return seek(0, SEEK_CUR, self); }
-    static sf_count_t read(void *into, sf_count_t bytes, void *self) {
+    static sf_count_t tell(void* self) { return seek(0, SEEK_CUR, self); }
+    static sf_count_t read(void* into, sf_count_t bytes, void* self) {
         return ::read(of(self).descriptor, into, static_cast<std::size_t>(bytes));
     }
-    static sf_count_t write(const void *from, sf_count_t bytes, void *self) {
-        const char *const start = static_cast<const char *>(from);
+    static sf_count_t write(const void* from, sf_count_t bytes, void* self) {
+        const char* const start = static_cast<const char*>(from);
         sf_count_t done = 0;
         while (done < bytes) {
             const ssize_t written =
@@ -113,10 +113,10 @@ struct descriptor_io {
 /// output is a pipe or device, a nameless file that is copied at the end.
 struct audio_file::state {
     struct close_sound {
-        void operator()(SNDFILE *sound) const noexcept { sf_close(sound); }
+        void operator()(SNDFILE* sound) const noexcept { sf_close(sound); }
     };
     struct close_file {
-        void operator()(std::FILE *file) const noexcept { std::fclose(file); }
+        void operator()(std::FILE* file) const noexcept { std::fclose(file); }
     };
 
     config wanted;
@@ -126,7 +126,7 @@ struct audio_file::state {
     std::unique_ptr<SNDFILE, close_sound> sound;
     std::int64_t clipped = 0;
 
-    explicit state(const config &given) : wanted{given}, out{given.target, given.force} {
+    explicit state(const config& given) : wanted{given}, out{given.target, given.force} {
         io.descriptor = out.descriptor();
         if (out.in_place()) {
             detour.reset(std::tmpfile());
@@ -200,7 +200,7 @@ audio_sample parse_audio_sample(std::string_view text, std::string_view option) 
     return static_cast<audio_sample>(found - sample_names.begin());
 }
 
-audio_container audio_container_of(const std::filesystem::path &target) {
+audio_container audio_container_of(const std::filesystem::path& target) {
     const std::string ending = lower_case(target.extension().string());
     if (ending == ".wav")
         return audio_container::wav;
@@ -210,13 +210,13 @@ audio_container audio_container_of(const std::filesystem::path &target) {
                 "end the name in .wav or .flac"};
 }
 
-audio_file::audio_file(const config &wanted) {
+audio_file::audio_file(const config& wanted) {
     refuse_what_does_not_fit(wanted, audio_container_of(wanted.target));
     state_ = std::make_unique<state>(wanted);
 }
 
-audio_file::audio_file(audio_file &&) noexcept = default;
-audio_file &audio_file::operator=(audio_file &&) noexcept = default;
+audio_file::audio_file(audio_file&&) noexcept = default;
+audio_file& audio_file::operator=(audio_file&&) noexcept = default;
 audio_file::~audio_file() = default;
 
 void audio_file::add(std::span<const float> samples) {

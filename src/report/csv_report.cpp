@@ -22,7 +22,7 @@ std::string field(std::string_view text) {
 }
 
 struct field_writer {
-    std::string &line;
+    std::string& line;
     void operator()(std::monostate) const {}
     void operator()(bool yes) const { line += yes ? "true" : "false"; }
     void operator()(std::int64_t count) const { line += fmt::format_int(count).c_str(); }
@@ -30,14 +30,14 @@ struct field_writer {
         if (std::isfinite(figure))
             fmt::format_to(std::back_inserter(line), "{}", figure);
     }
-    void operator()(const std::string &words) const { line += field(words); }
+    void operator()(const std::string& words) const { line += field(words); }
 };
 
 } // namespace
 
-void write_csv(output_file &out, const sheet_table &table) {
+void write_csv(output_file& out, const sheet_table& table) {
     std::string line;
-    for (const sheet_column &column : table.columns)
+    for (const sheet_column& column : table.columns)
         line += (line.empty() ? "" : ",") + field(column.key);
     out.write(line + '\n');
     for (std::size_t row = 0; row < table.rows; ++row) {

@@ -10,24 +10,24 @@
 namespace tonewalk {
 namespace {
 
-void write_members(json_stream &, const sheet &);
+void write_members(json_stream&, const sheet&);
 
-void write_object(json_stream &json, const sheet &page) {
+void write_object(json_stream& json, const sheet& page) {
     json.begin_object();
     write_members(json, page);
     json.end();
 }
 
-void write_list(json_stream &json, const std::vector<sheet> &parts) {
+void write_list(json_stream& json, const std::vector<sheet>& parts) {
     json.begin_list();
-    for (const sheet &part : parts)
+    for (const sheet& part : parts)
         write_object(json, part);
     json.end();
 }
 
-void write_columns(json_stream &json, const sheet_table &table) {
+void write_columns(json_stream& json, const sheet_table& table) {
     json.begin_object();
-    for (const sheet_column &column : table.columns) {
+    for (const sheet_column& column : table.columns) {
         json.key(column.key);
         json.begin_wrapped_list();
         for (std::size_t row = 0; row < table.rows; ++row)
@@ -37,11 +37,11 @@ void write_columns(json_stream &json, const sheet_table &table) {
     json.end();
 }
 
-void write_records(json_stream &json, const sheet_table &table) {
+void write_records(json_stream& json, const sheet_table& table) {
     json.begin_list();
     for (std::size_t row = 0; row < table.rows; ++row) {
         json.begin_inline_object();
-        for (const sheet_column &column : table.columns) {
+        for (const sheet_column& column : table.columns) {
             json.key(column.key);
             json.value(column.at(row));
         }
@@ -51,28 +51,28 @@ void write_records(json_stream &json, const sheet_table &table) {
 }
 
 struct item_writer {
-    json_stream &json;
-    void operator()(const sheet_entry &entry) const {
+    json_stream& json;
+    void operator()(const sheet_entry& entry) const {
         json.key(entry.key);
         json.value(entry.value);
     }
-    void operator()(const sheet_table &table) const {
+    void operator()(const sheet_table& table) const {
         json.key(table.key);
         table.form == table_form::as_columns ? write_columns(json, table)
                                              : write_records(json, table);
     }
-    void operator()(const sheet_group &group) const {
+    void operator()(const sheet_group& group) const {
         json.key(group.key);
         group.list ? write_list(json, group.parts) : write_object(json, group.parts.front());
     }
 };
 
-void write_members(json_stream &json, const sheet &page) {
-    for (const auto &item : page.items)
+void write_members(json_stream& json, const sheet& page) {
+    for (const auto& item : page.items)
         std::visit(item_writer{json}, item);
 }
 
-sheet described(const recording_summary &recording) {
+sheet described(const recording_summary& recording) {
     const auto time = recording.start_utc ? cell{format_utc(*recording.start_utc, 9)} : cell{};
     const auto hash = recording.sha512.empty() ? cell{} : cell{recording.sha512};
     sheet page;
@@ -89,7 +89,7 @@ sheet described(const recording_summary &recording) {
     return page;
 }
 
-void write_head(json_stream &json, const report_context &context) {
+void write_head(json_stream& json, const report_context& context) {
     json.key("tonewalk");
     json.begin_inline_object();
     json.key("version");
@@ -99,31 +99,31 @@ void write_head(json_stream &json, const report_context &context) {
     json.end();
     json.key("command");
     json.begin_wrapped_list();
-    for (const std::string &word : context.command)
+    for (const std::string& word : context.command)
         json.text(word);
     json.end();
     json.key("job");
     json.text(context.job);
 }
 
-void write_recordings(json_stream &json, const std::vector<recording_summary> &recordings) {
+void write_recordings(json_stream& json, const std::vector<recording_summary>& recordings) {
     json.key("recording");
     recordings.empty() ? json.null() : write_object(json, described(recordings.front()));
     if (recordings.size() < 2)
         return;
     json.key("recordings");
     json.begin_list();
-    for (const recording_summary &each : recordings)
+    for (const recording_summary& each : recordings)
         write_object(json, described(each));
     json.end();
 }
 
-void write_optional(json_stream &json, std::string_view key, const std::optional<sheet> &page) {
+void write_optional(json_stream& json, std::string_view key, const std::optional<sheet>& page) {
     json.key(key);
     page ? write_object(json, *page) : json.null();
 }
 
-void write_numbers(json_stream &json, std::string_view key, const std::vector<double> &numbers) {
+void write_numbers(json_stream& json, std::string_view key, const std::vector<double>& numbers) {
     json.key(key);
     json.begin_wrapped_list();
     for (const double each : numbers)
@@ -131,12 +131,12 @@ void write_numbers(json_stream &json, std::string_view key, const std::vector<do
     json.end();
 }
 
-void write_curve(json_stream &json, const curve &drawn) {
+void write_curve(json_stream& json, const curve& drawn) {
     json.begin_object();
     json.key("kind");
     json.text(drawn.kind);
-    const auto axis = [&](std::string_view name, const std::string &unit,
-                          const std::vector<double> &numbers) {
+    const auto axis = [&](std::string_view name, const std::string& unit,
+                          const std::vector<double>& numbers) {
         json.key(fmt::format("{}_unit", name));
         json.text(unit);
         write_numbers(json, name, numbers);
@@ -148,21 +148,21 @@ void write_curve(json_stream &json, const curve &drawn) {
     json.end();
 }
 
-void write_curves(json_stream &json, const sheet &page, std::map<std::string, int> &used) {
-    for (const curve &each : page.curves) {
+void write_curves(json_stream& json, const sheet& page, std::map<std::string, int>& used) {
+    for (const curve& each : page.curves) {
         const int times = ++used[each.name];
         json.key(times == 1 ? each.name : fmt::format("{}_{}", each.name, times));
         write_curve(json, each);
     }
-    for (const auto &item : page.items)
-        if (const auto *group = std::get_if<sheet_group>(&item))
-            for (const sheet &part : group->parts)
+    for (const auto& item : page.items)
+        if (const auto* group = std::get_if<sheet_group>(&item))
+            for (const sheet& part : group->parts)
                 write_curves(json, part, used);
 }
 
-void write_notes(json_stream &json, const note_set &notes) {
+void write_notes(json_stream& json, const note_set& notes) {
     json.begin_list();
-    for (const note &each : notes.all()) {
+    for (const note& each : notes.all()) {
         json.begin_object();
         json.key("code");
         json.text(name(each.code));
@@ -179,7 +179,7 @@ void write_notes(json_stream &json, const note_set &notes) {
 
 } // namespace
 
-void write_json(output_file &out, const report_context &context, const sheet &result,
+void write_json(output_file& out, const report_context& context, const sheet& result,
                 json_report_options options) {
     json_stream json{out};
     json.begin_object();
@@ -202,7 +202,7 @@ void write_json(output_file &out, const report_context &context, const sheet &re
     write_notes(json, context.notes);
     json.key("cautions");
     json.begin_list();
-    for (const std::string &line : context.cautions)
+    for (const std::string& line : context.cautions)
         json.text(line);
     json.end();
     json.end();

@@ -44,14 +44,14 @@ void json_stream::key(std::string_view name) {
     after_key_ = true;
 }
 
-void json_stream::value(const cell &held) {
+void json_stream::value(const cell& held) {
     struct writer {
-        json_stream &json;
+        json_stream& json;
         void operator()(std::monostate) const { json.null(); }
         void operator()(bool yes) const { json.truth(yes); }
         void operator()(std::int64_t count) const { json.whole(count); }
         void operator()(double figure) const { json.number(figure); }
-        void operator()(const std::string &words) const { json.text(words); }
+        void operator()(const std::string& words) const { json.text(words); }
     };
     std::visit(writer{*this}, held);
 }
@@ -91,7 +91,7 @@ void json_stream::put(std::string_view token) {
 void json_stream::separate(std::size_t size) {
     if (levels_.empty())
         return;
-    level &inside = levels_.back();
+    level& inside = levels_.back();
     if (!inside.empty)
         emit(",");
     const bool overflows = inside.form == layout::wrapped && column_ + 1 + size > line_length;

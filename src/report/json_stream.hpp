@@ -17,7 +17,7 @@ namespace tonewalk {
 /// equal, bytes that are not UTF-8 are replaced.
 class json_stream {
 public:
-    explicit json_stream(output_file &out) : out_{out} {}
+    explicit json_stream(output_file& out) : out_{out} {}
 
     void begin_object() { begin(layout::lines, '{', '}'); }
     void begin_inline_object() { begin(layout::one_line, '{', '}'); }
@@ -26,7 +26,7 @@ public:
     void end(); ///< of the innermost; the last one ends the document with a line feed
 
     void key(std::string_view); ///< before a value or begin_...(), inside an object
-    void value(const cell &);
+    void value(const cell&);
     void text(std::string_view);
     void number(double);
     void whole(std::int64_t);
@@ -46,7 +46,7 @@ private:
     void new_line(std::size_t depth);
     void emit(std::string_view);
 
-    output_file &out_;
+    output_file& out_;
     std::vector<level> levels_;
     std::size_t column_ = 0;
     bool after_key_ = false;

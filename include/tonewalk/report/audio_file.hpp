@@ -18,7 +18,7 @@ enum class audio_sample { pcm16, pcm24, float32 };
 enum class audio_container { wav, flac };
 /// From the name's ending, .wav or .flac, large or small letters; throws error{bad_request} for
 /// others.
-[[nodiscard]] audio_container audio_container_of(const std::filesystem::path &);
+[[nodiscard]] audio_container audio_container_of(const std::filesystem::path&);
 
 /// A mono audio file that appears whole or not at all. WAV turns into RF64 where it passes 4
 /// GiB. 1.0 is full scale: integers scale by 2^(bits-1), rounded; beyond ±1.0 they are clamped and
@@ -32,9 +32,9 @@ public:
         audio_sample sample = audio_sample::pcm16;
         bool force = false; ///< replace a file that is there
     };
-    explicit audio_file(const config &);
-    audio_file(audio_file &&) noexcept;
-    audio_file &operator=(audio_file &&) noexcept;
+    explicit audio_file(const config&);
+    audio_file(audio_file&&) noexcept;
+    audio_file& operator=(audio_file&&) noexcept;
     ~audio_file() override; ///< without finish(): nothing is left behind
 
     void add(std::span<const float>) override; ///< finite samples

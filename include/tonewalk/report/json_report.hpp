@@ -17,7 +17,6 @@ struct json_report_options {
 /// The whole result as one JSON document (docs/results.md, docs/results.schema.json), written as a
 /// stream: columns are asked row by row and never copied. Curves of nested parts stand beside those
 /// of the result; a name that comes again gets "_2", "_3" ... The caller commits the file.
-void write_json(output_file &, const report_context &, const sheet &result,
-                json_report_options = {});
+void write_json(output_file&, const report_context&, const sheet& result, json_report_options = {});
 
 } // namespace tonewalk

@@ -26,8 +26,7 @@ struct recording_summary {
     bool partial = false;              ///< stopped before its end
 };
 /// `measured` samples from the start of what was to be measured, less than all when `partial`.
-[[nodiscard]] recording_summary summarise(const stream_facts &, sample_index measured,
-                                          bool partial);
+[[nodiscard]] recording_summary summarise(const stream_facts&, sample_index measured, bool partial);
 
 /// Everything of a report but its result: who measured what, how, and what to mind.
 struct report_context {
@@ -43,8 +42,8 @@ struct report_context {
 };
 
 /// A table of a sheet or of its nested parts, by its key; null where there is none.
-[[nodiscard]] const sheet_table *find_table(const sheet &, std::string_view key) noexcept;
+[[nodiscard]] const sheet_table* find_table(const sheet&, std::string_view key) noexcept;
 /// A column of a table by its key; null where there is none.
-[[nodiscard]] const sheet_column *find_column(const sheet_table &, std::string_view key) noexcept;
+[[nodiscard]] const sheet_column* find_column(const sheet_table&, std::string_view key) noexcept;
 
 } // namespace tonewalk

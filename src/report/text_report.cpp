@@ -1,0 +1,236 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "tonewalk/report/text_report.hpp"
+
+#include <cmath>
+
+#include <fmt/format.h>
+#include <fmt/ranges.h>
+
+#include "text_layout.hpp"
+#include "text_value.hpp"
+#include "tonewalk/base/quantity.hpp"
+#include "tonewalk/report/level_plot.hpp"
+
+namespace tonewalk {
+namespace {
+
+using strings = std::vector<std::string>;
+
+/// Puts a sheet and its nested parts below each other.
+class sheet_printer {
+public:
+    sheet_printer(const text_layout& layout, std::size_t table_rows)
+        : layout_{layout}, table_rows_{table_rows} {}
+
+    [[nodiscard]] std::string print(const sheet& page, std::size_t indent) const {
+        std::string text = entries(page, indent);
+        for (const auto& item : page.items) {
+            if (const auto* table = std::get_if<sheet_table>(&item))
+                text += print(*table, indent);
+            else if (const auto* group = std::get_if<sheet_group>(&item))
+                text += print(*group, indent);
+        }
+        return text;
+    }
+
+private:
+    [[nodiscard]] std::string heading(std::string_view words, std::size_t indent) const {
+        return fmt::format("\n{}{}\n", std::string(indent, ' '),
+                           layout_.coloured(words, ink::strong));
+    }
+
+    [[nodiscard]] std::string entries(const sheet& page, std::size_t indent) const {
+        std::vector<std::string_view> keys;
+        std::vector<const sheet_entry*> found;
+        for (const auto& item : page.items)
+            if (const auto* entry = std::get_if<sheet_entry>(&item)) {
+                keys.push_back(entry->key);
+                found.push_back(entry);
+            }
+        std::vector<text_layout::pair> lines;
+        for (const value_group& each : group_by_value(keys)) {
+            const auto number = [&](const std::optional<std::size_t>& place) {
+                return place ? number_in(found[*place]->value) : not_measured;
+            };
+            const sheet_entry& entry = *found[each.value];
+            const figure shown{entry.value, number(each.u95), number(each.low95),
+                               number(each.high95), entry.unit};
+            lines.push_back({label_of(entry.key), harmless(text_of(shown))});
+        }
+        return layout_.pairs(lines, indent);
+    }
+
+    [[nodiscard]] std::string print(const sheet_group& group, std::size_t indent) const {
+        std::string text;
+        for (std::size_t i = 0; i < group.parts.size(); ++i) {
+            const std::string label = label_of(group.key);
+            text += heading(group.list ? fmt::format("{} {}", label, i + 1) : label, indent);
+            text += print(group.parts[i], indent + 2);
+        }
+        return text;
+    }
+
+    [[nodiscard]] std::string print(const sheet_table& table, std::size_t indent) const {
+        std::string text = heading(label_of(table.key), indent);
+        if (table.form == table_form::as_columns || table.rows == 0)
+            return text + fmt::format("{}{} records\n", std::string(indent + 2, ' '), table.rows);
+        const std::size_t shown = std::min(table.rows, table_rows_);
+        const std::string grid = layout_.grid(grid_of(table, shown), indent + 2);
+        text += grid.empty() ? listed(table, shown, indent + 2) : grid;
+        if (shown < table.rows)
+            text +=
+                fmt::format("{}and {} more\n", std::string(indent + 2, ' '), table.rows - shown);
+        return text;
+    }
+
+    [[nodiscard]] static std::vector<value_group> groups_of(const sheet_table& table) {
+        std::vector<std::string_view> keys;
+        for (const sheet_column& each : table.columns)
+            keys.push_back(each.key);
+        return group_by_value(keys);
+    }
+
+    [[nodiscard]] static std::string cell_of(const sheet_table& table, const value_group& group,
+                                             std::size_t row, bool with_unit) {
+        const auto number = [&](const std::optional<std::size_t>& place) {
+            return place ? number_in(table.columns[*place].at(row)) : not_measured;
+        };
+        const sheet_column& column = table.columns[group.value];
+        return harmless(text_of({column.at(row), number(group.u95), number(group.low95),
+                                 number(group.high95), with_unit ? column.unit : ""}));
+    }
+
+    /// Headings with units, then the rows; for a wide screen.
+    [[nodiscard]] static std::vector<strings> grid_of(const sheet_table& table, std::size_t rows) {
+        const auto groups = groups_of(table);
+        std::vector<strings> grid(1);
+        for (const value_group& each : groups) {
+            const sheet_column& column = table.columns[each.value];
+            const std::string label = label_of(column.key);
+            grid[0].push_back(column.unit.empty() ? label
+                                                  : fmt::format("{} ({})", label, column.unit));
+        }
+        for (std::size_t row = 0; row < rows; ++row) {
+            strings& line = grid.emplace_back();
+            for (const value_group& each : groups)
+                line.push_back(cell_of(table, each, row, false));
+        }
+        return grid;
+    }
+
+    /// "peak, time 1.2 s, level ...": for a narrow screen.
+    [[nodiscard]] std::string listed(const sheet_table& table, std::size_t rows,
+                                     std::size_t indent) const {
+        std::string text;
+        for (std::size_t row = 0; row < rows; ++row) {
+            strings parts;
+            for (const value_group& each : groups_of(table)) {
+                const std::string value = cell_of(table, each, row, true);
+                const bool speaks =
+                    std::holds_alternative<std::string>(table.columns[each.value].at(row));
+                parts.push_back(speaks ? value
+                                       : label_of(table.columns[each.value].key) + ' ' + value);
+            }
+            text += layout_.paragraph(fmt::format("{}", fmt::join(parts, ", ")), indent, 2);
+        }
+        return text;
+    }
+
+    const text_layout& layout_;
+    std::size_t table_rows_;
+};
+
+std::string rate_text(double rate_hz) {
+    std::string text = format_hz(rate_hz);
+    return text.replace(text.size() - 2, 2, "S/s");
+}
+
+std::string recording_text(const recording_summary& recording, const text_layout& layout) {
+    strings facts{harmless(recording.format), rate_text(recording.sample_rate_hz)};
+    if (recording.centre_hz)
+        facts.push_back("centre " + format_hz(*recording.centre_hz));
+    if (recording.start_utc)
+        facts.push_back("from " + format_utc(*recording.start_utc, 0));
+    facts.push_back(time_text(recording.duration_s) + " measured");
+    if (recording.partial)
+        facts.push_back("stopped early");
+    return layout.paragraph(harmless(recording.name)) +
+           layout.paragraph(fmt::format("{}", fmt::join(facts, ", ")));
+}
+
+std::vector<double> numbers_of(const sheet_table& table, std::string_view key) {
+    std::vector<double> numbers(table.rows, not_measured);
+    if (const sheet_column* column = find_column(table, key))
+        for (std::size_t row = 0; row < table.rows; ++row)
+            numbers[row] = number_in(column->at(row));
+    return numbers;
+}
+
+std::vector<level_plot::mark> marks_of(const sheet& result) {
+    const sheet_table* const extrema = find_table(result, "extrema");
+    const sheet_column* const kind = extrema != nullptr ? find_column(*extrema, "kind") : nullptr;
+    if (kind == nullptr)
+        return {};
+    const std::vector<double> time_s = numbers_of(*extrema, "time_s");
+    std::vector<level_plot::mark> marks;
+    for (std::size_t row = 0; row < extrema->rows; ++row)
+        if (std::isfinite(time_s[row]))
+            marks.push_back({time_s[row], kind->at(row) == cell{std::string{"null"}} ? 'N' : 'P'});
+    return marks;
+}
+
+std::string plot_text(const sheet& result, const text_report_options& options) {
+    const sheet_table* const log = find_table(result, "log");
+    if (log == nullptr || options.plot_column.empty())
+        return {};
+    const sheet_column* const column = find_column(*log, options.plot_column);
+    if (column == nullptr)
+        return {};
+    const level_plot plot{fmt::format("{} ({})", label_of(column->key), column->unit),
+                          numbers_of(*log, "time_s"), numbers_of(*log, column->key),
+                          numbers_of(*log, column->key + "_high95"), marks_of(result)};
+    return '\n' + draw(plot, options.columns);
+}
+
+} // namespace
+
+std::string summary_text(const report_context& context, const sheet& result,
+                         const text_report_options& options) {
+    const text_layout layout{options.columns, options.colour};
+    const sheet_printer printer{layout, options.table_rows};
+    std::string text;
+    for (const recording_summary& each : context.recordings)
+        text += recording_text(each, layout);
+    if (context.signal)
+        text += '\n' + printer.print(*context.signal, 0);
+    text += '\n' + printer.print(result, 0);
+    return text + plot_text(result, options);
+}
+
+std::string notes_text(const note_set& notes, const text_report_options& options) {
+    const text_layout layout{options.columns, options.colour};
+    std::string text;
+    for (const note& each : notes.all()) {
+        const bool warns = each.level == severity::warning;
+        if (!warns && !options.info_notes)
+            continue;
+        const std::string advice = each.advice.empty() ? "" : "; " + each.advice;
+        const std::string line =
+            layout.paragraph(fmt::format("{} {}: {}{}", name(each.level), name(each.code),
+                                         harmless(each.text), harmless(advice)),
+                             0, 2);
+        text += layout.coloured(line, warns ? ink::alarm : ink::plain);
+    }
+    return text;
+}
+
+std::string cautions_text(const std::vector<std::string>& cautions,
+                          const text_report_options& options) {
+    const text_layout layout{options.columns, options.colour};
+    std::string text;
+    for (const std::string& each : cautions)
+        text += layout.coloured(layout.paragraph("caution: " + each, 0, 2), ink::faint);
+    return text;
+}
+
+} // namespace tonewalk
