@@ -16,15 +16,15 @@ namespace tonewalk::cli {
 /// What a job is told besides its own options.
 struct program {
     std::vector<std::string> command; ///< as typed
-    const stop_watch &stopping;
+    const stop_watch& stopping;
 };
 
 /// Runs a job whose options have been read; returns the exit status.
-using job_action = std::function<int(const program &)>;
+using job_action = std::function<int(const program&)>;
 
 /// Each adds its options to the job's own command and returns what to do once they are read.
-job_action add_hear(CLI::App &);
-job_action add_levels(CLI::App &);
-job_action add_make(CLI::App &);
+job_action add_hear(CLI::App&);
+job_action add_levels(CLI::App&);
+job_action add_make(CLI::App&);
 
 } // namespace tonewalk::cli

@@ -19,10 +19,10 @@ namespace {
 constexpr int usage_status = 2, own_fault_status = 5;
 
 struct job {
-    const char *name;
-    const char *answers;
-    job_action (*add)(CLI::App &);
-    const char *examples;
+    const char* name;
+    const char* answers;
+    job_action (*add)(CLI::App&);
+    const char* examples;
 };
 
 constexpr job jobs[] = {
@@ -37,14 +37,14 @@ constexpr job jobs[] = {
      "  tonewalk make scene.toml -o scene"},
 };
 
-void complain(const std::string &line) {
+void complain(const std::string& line) {
     fmt::print(stderr, "tonewalk: {}\n", line);
 }
 
-std::vector<std::string> option_names(const CLI::App &app) {
+std::vector<std::string> option_names(const CLI::App& app) {
     std::vector<std::string> names;
-    for (const CLI::Option *option : app.get_options()) {
-        for (const std::string &name : option->get_lnames()) {
+    for (const CLI::Option* option : app.get_options()) {
+        for (const std::string& name : option->get_lnames()) {
             names.push_back("--" + name);
         }
     }
@@ -52,12 +52,12 @@ std::vector<std::string> option_names(const CLI::App &app) {
 }
 
 /// One line for what the command line holds that no option or job takes.
-std::string unknown_words(const CLI::App &app) {
+std::string unknown_words(const CLI::App& app) {
     const std::string word = app.remaining(true).front();
     std::vector<std::string> names = option_names(app);
     if (word.front() != '-' && app.get_parent() == nullptr) {
         names.clear();
-        for (const job &each : jobs) {
+        for (const job& each : jobs) {
             names.emplace_back(each.name);
         }
     }
@@ -73,9 +73,9 @@ std::string unknown_words(const CLI::App &app) {
 }
 
 /// Options that take a value refuse one that looks like an option: `--csv --quiet` forgot the file.
-void refuse_option_like_values(const CLI::App &app) {
-    for (const CLI::Option *option : app.get_options()) {
-        for (const std::string &value : option->results()) {
+void refuse_option_like_values(const CLI::App& app) {
+    for (const CLI::Option* option : app.get_options()) {
+        for (const std::string& value : option->results()) {
             if (option->get_items_expected_max() > 0 && value.rfind("--", 0) == 0 &&
                 value.size() > 2) {
                 throw error{fault::bad_request, fmt::format("needs a value, not {}", value),
@@ -85,12 +85,12 @@ void refuse_option_like_values(const CLI::App &app) {
     }
 }
 
-const CLI::App &deepest(const CLI::App &app) {
+const CLI::App& deepest(const CLI::App& app) {
     const auto chosen = app.get_subcommands();
     return chosen.empty() ? app : *chosen.front();
 }
 
-int run(int argc, char **argv) {
+int run(int argc, char** argv) {
     const stop_watch stopping;
     CLI::App app{"Measurements on recordings of amplitude-modulated transmitters.", "tonewalk"};
     app.set_help_flag("-h,--help", "show this, or after a job the job's options");
@@ -99,22 +99,22 @@ int run(int argc, char **argv) {
     app.add_flag("--version", version, "show the version");
     app.add_flag("--licences", licences, "with --version: whose work is inside");
 
-    std::map<const CLI::App *, job_action> actions;
-    for (const job &each : jobs) {
-        CLI::App *command = app.add_subcommand(each.name, each.answers);
+    std::map<const CLI::App*, job_action> actions;
+    for (const job& each : jobs) {
+        CLI::App* command = app.add_subcommand(each.name, each.answers);
         command->footer(fmt::format("Examples:\n{}", each.examples));
         actions[command] = each.add(*command);
     }
     try {
         app.parse(argc, argv);
         refuse_option_like_values(deepest(app));
-    } catch (const CLI::CallForHelp &) {
+    } catch (const CLI::CallForHelp&) {
         fmt::print("{}", app.help());
         return 0;
-    } catch (const CLI::ExtrasError &) {
+    } catch (const CLI::ExtrasError&) {
         complain(unknown_words(deepest(app)));
         return usage_status;
-    } catch (const CLI::ParseError &problem) {
+    } catch (const CLI::ParseError& problem) {
         complain(fmt::format("{}; see tonewalk {}--help", problem.what(),
                              &deepest(app) == &app ? "" : deepest(app).get_name() + " "));
         return usage_status;
@@ -133,14 +133,14 @@ int run(int argc, char **argv) {
 } // namespace
 } // namespace tonewalk::cli
 
-int main(int argc, char **argv) {
+int main(int argc, char** argv) {
     using namespace tonewalk;
     try {
         return cli::run(argc, argv);
-    } catch (const error &problem) {
+    } catch (const error& problem) {
         cli::complain(problem.what());
         return problem.exit_status();
-    } catch (const std::exception &problem) {
+    } catch (const std::exception& problem) {
         cli::complain(
             fmt::format("fault of the program itself: {}; please report this line with the command "
                         "and tonewalk --version",

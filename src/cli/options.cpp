@@ -16,14 +16,14 @@ namespace {
 
 constexpr long most_threads = 16;
 
-std::optional<double> hz_or_nothing(const std::string &text, std::string_view option) {
+std::optional<double> hz_or_nothing(const std::string& text, std::string_view option) {
     if (text.empty()) {
         return std::nullopt;
     }
     return parse_hz(text, option);
 }
 
-std::optional<double> positive_hz(const std::string &text, std::string_view option) {
+std::optional<double> positive_hz(const std::string& text, std::string_view option) {
     const auto hz = hz_or_nothing(text, option);
     if (hz && *hz <= 0.0) {
         throw error{fault::bad_request, "has to be above 0 Hz", fmt::format("{} {}", option, text),
@@ -32,7 +32,7 @@ std::optional<double> positive_hz(const std::string &text, std::string_view opti
     return hz;
 }
 
-sample_format format_or_error(const std::string &text) {
+sample_format format_or_error(const std::string& text) {
     const auto format = parse_sample_format(text);
     if (!format) {
         throw error{
@@ -44,7 +44,7 @@ sample_format format_or_error(const std::string &text) {
 
 } // namespace
 
-void recording_options::add_to(CLI::App &app) {
+void recording_options::add_to(CLI::App& app) {
     const std::string group = "The recording";
     app.add_option("RECORDING", recording,
                    "SigMF recording or archive, two-channel (I, Q) or one-channel container, raw "
@@ -103,7 +103,7 @@ recording_request recording_options::request() const {
     return request;
 }
 
-void signal_options::add_to(CLI::App &app) {
+void signal_options::add_to(CLI::App& app) {
     const std::string group = "The signal";
     app.add_option(
            "--carrier", carrier,
@@ -134,7 +134,7 @@ std::optional<double> signal_options::width_hz() const {
     return positive_hz(width, "--width");
 }
 
-void running_options::add_to(CLI::App &app) {
+void running_options::add_to(CLI::App& app) {
     const std::string group = "Running";
     app.add_option("--threads", threads,
                    "how many threads, 1 to 16; by default the machine's cores")
@@ -162,18 +162,18 @@ progress_choice running_options::progress_shown() const {
     return quiet ? progress_choice::never : choice;
 }
 
-void json_options::add_to(CLI::App &app) {
+void json_options::add_to(CLI::App& app) {
     const std::string group = "Outputs";
     app.add_option("--json", json, "results as JSON; - is standard output")->group(group);
     app.add_option("--curves", curves, "none: leave what is drawn out of the JSON")->group(group);
 }
 
-std::optional<std::filesystem::path> given_path(const std::string &text) {
+std::optional<std::filesystem::path> given_path(const std::string& text) {
     return text.empty() ? std::nullopt : std::optional<std::filesystem::path>{text};
 }
 
 std::size_t chosen(std::string_view option, std::string_view typed,
-                   const std::vector<std::string_view> &choices) {
+                   const std::vector<std::string_view>& choices) {
     const auto found = std::find(choices.begin(), choices.end(), typed);
     if (found == choices.end()) {
         throw error{fault::bad_request, "is not one of its choices",

@@ -24,14 +24,14 @@ namespace tonewalk::cli {
 struct recording_options {
     std::string recording, format, rate, centre, start_utc, lane, member, from, until;
     bool swap_iq = false, inverted = false, verify = false;
-    void add_to(CLI::App &);
+    void add_to(CLI::App&);
     [[nodiscard]] recording_request request() const;
 };
 
 /// Which signal in it.
 struct signal_options {
     std::string carrier = "auto", tone = "auto", width;
-    void add_to(CLI::App &);
+    void add_to(CLI::App&);
     [[nodiscard]] std::optional<signed_hz> carrier_hz() const; ///< nothing: auto
     [[nodiscard]] std::optional<double> tone_hz() const;       ///< nothing: auto
     [[nodiscard]] std::optional<double> width_hz() const;      ///< nothing: from the tone
@@ -41,7 +41,7 @@ struct signal_options {
 struct running_options {
     std::string threads, progress = "auto";
     bool quiet = false, force = false;
-    void add_to(CLI::App &);
+    void add_to(CLI::App&);
     [[nodiscard]] unsigned thread_count() const; ///< 1 to 16; the machine's cores when not given
     [[nodiscard]] progress_choice progress_shown() const;
 };
@@ -49,15 +49,15 @@ struct running_options {
 /// JSON, and what it holds.
 struct json_options {
     std::string json, curves;
-    void add_to(CLI::App &);
+    void add_to(CLI::App&);
     [[nodiscard]] bool with_curves() const { return curves != "none"; }
 };
 
 /// A path that was given, or nothing for an empty option.
-[[nodiscard]] std::optional<std::filesystem::path> given_path(const std::string &);
+[[nodiscard]] std::optional<std::filesystem::path> given_path(const std::string&);
 
 /// One of `choices`, else error{bad_request} that lists them with the nearest first.
 std::size_t chosen(std::string_view option, std::string_view typed,
-                   const std::vector<std::string_view> &choices);
+                   const std::vector<std::string_view>& choices);
 
 } // namespace tonewalk::cli

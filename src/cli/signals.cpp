@@ -27,12 +27,12 @@ stop_watch::stop_watch() {
     const sigset_t set = stopping_signals();
     pthread_sigmask(SIG_BLOCK, &set,
                     nullptr); // every later thread inherits this; the watcher waits
-    watcher_ = std::jthread{[this](const std::stop_token &ending) { watch(ending); }};
+    watcher_ = std::jthread{[this](const std::stop_token& ending) { watch(ending); }};
 }
 
 stop_watch::~stop_watch() = default;
 
-void stop_watch::watch(const std::stop_token &ending) {
+void stop_watch::watch(const std::stop_token& ending) {
     const sigset_t set = stopping_signals();
     const timespec a_while{.tv_sec = 0, .tv_nsec = 50'000'000};
     while (!ending.stop_requested()) {

@@ -14,14 +14,14 @@ class stop_watch {
 public:
     stop_watch();
     ~stop_watch();
-    stop_watch(const stop_watch &) = delete;
-    stop_watch &operator=(const stop_watch &) = delete;
+    stop_watch(const stop_watch&) = delete;
+    stop_watch& operator=(const stop_watch&) = delete;
     [[nodiscard]] std::stop_token token() const noexcept { return source_.get_token(); }
     /// 130 after SIGINT, 143 after SIGTERM, 0 when nobody asked to stop.
     [[nodiscard]] int exit_status() const noexcept { return status_.load(); }
 
 private:
-    void watch(const std::stop_token &ending);
+    void watch(const std::stop_token& ending);
     std::stop_source source_;
     std::atomic<int> status_{0};
     std::jthread watcher_;

@@ -37,7 +37,7 @@ void print_version(bool licences) {
     }
     fmt::print(
         "GPL-3.0-or-later; there is no warranty, to the extent permitted by law.\n\nInside:\n");
-    for (const inside &each : libraries) {
+    for (const inside& each : libraries) {
         fmt::print("  {:<26} {}\n", each.library, each.licence);
     }
 }

@@ -13,7 +13,7 @@ namespace tonewalk {
 namespace {
 
 struct fftw_memory {
-    void operator()(cf32 *p) const noexcept { fftwf_free(p); }
+    void operator()(cf32* p) const noexcept { fftwf_free(p); }
 };
 using fftw_buffer = std::unique_ptr<cf32[], fftw_memory>;
 
@@ -23,7 +23,7 @@ struct plan_ending {
 using fftw_plan_handle = std::unique_ptr<std::remove_pointer_t<fftwf_plan>, plan_ending>;
 
 fftw_buffer make_buffer(std::size_t size) {
-    auto *memory = static_cast<cf32 *>(fftwf_malloc(size * sizeof(cf32)));
+    auto* memory = static_cast<cf32*>(fftwf_malloc(size * sizeof(cf32)));
     if (memory == nullptr) {
         throw std::bad_alloc{};
     }
@@ -40,8 +40,8 @@ void make_planner_safe() {
     static_cast<void>(once);
 }
 
-fftwf_complex *as_fftw(cf32 *p) noexcept {
-    return reinterpret_cast<fftwf_complex *>(p);
+fftwf_complex* as_fftw(cf32* p) noexcept {
+    return reinterpret_cast<fftwf_complex*>(p);
 }
 
 } // namespace
@@ -65,8 +65,8 @@ fft::fft(std::size_t size, direction way) {
     }
 }
 
-fft::fft(fft &&) noexcept = default;
-fft &fft::operator=(fft &&) noexcept = default;
+fft::fft(fft&&) noexcept = default;
+fft& fft::operator=(fft&&) noexcept = default;
 fft::~fft() = default;
 
 std::size_t fft::size() const noexcept {

@@ -29,7 +29,7 @@ double sinc(double x) {
     return x == 0.0 ? 1.0 : std::sin(turn) / turn;
 }
 
-void check(const low_pass_design &d) {
+void check(const low_pass_design& d) {
     const bool good = d.rate_hz > 0.0 && d.pass_edge_hz >= 0.0 && d.pass_edge_hz < d.stop_edge_hz &&
                       d.stop_edge_hz <= d.rate_hz / 2.0 && d.attenuation_db > 0.0 &&
                       d.half_multiple_of > 0;
@@ -43,7 +43,7 @@ void check(const low_pass_design &d) {
 
 } // namespace
 
-std::vector<double> design_low_pass(const low_pass_design &d) {
+std::vector<double> design_low_pass(const low_pass_design& d) {
     check(d);
     constexpr double margin_db =
         3.0; // Kaiser's length estimate can miss by some tenths of a decibel
@@ -64,7 +64,7 @@ std::vector<double> design_low_pass(const low_pass_design &d) {
                   std::cyl_bessel_i(0.0, beta * std::sqrt(std::max(0.0, 1.0 - r * r)));
         sum += taps[k];
     }
-    for (double &tap : taps) {
+    for (double& tap : taps) {
         tap /= sum;
     }
     return taps;

@@ -19,17 +19,20 @@ public:
     virtual ~workspace() = default;
 };
 
-/// From stored bytes to channel samples: a pure function of (bytes, absolute sample index), immutable and
-/// shared by all threads. Convert, complex band-pass at the carrier's offset, decimate, mix to 0 Hz with
-/// phase index x 64-bit step modulo 2^64.
+/// From stored bytes to channel samples: a pure function of (bytes, absolute sample index),
+/// immutable and shared by all threads. Convert, complex band-pass at the carrier's offset,
+/// decimate, mix to 0 Hz with phase index x 64-bit step modulo 2^64.
 class front_end {
 public:
     virtual ~front_end() = default;
     /// Throws error{malformed} where no stretch holds a plan's channel.
-    static std::unique_ptr<const front_end> make(const stream_facts&, std::span<const channel_plan>);
+    static std::unique_ptr<const front_end> make(const stream_facts&,
+                                                 std::span<const channel_plan>);
 
-    [[nodiscard]] virtual std::size_t lead() const noexcept = 0;  ///< history samples that a block wants
-    [[nodiscard]] virtual std::size_t cell() const noexcept = 0;  ///< blocks are whole cells from the stretch's start
+    [[nodiscard]] virtual std::size_t
+    lead() const noexcept = 0; ///< history samples that a block wants
+    [[nodiscard]] virtual std::size_t
+    cell() const noexcept = 0; ///< blocks are whole cells from the stretch's start
     [[nodiscard]] virtual std::size_t decimation() const noexcept = 0; ///< input samples per output
     [[nodiscard]] virtual double output_rate_hz() const noexcept = 0;
     /// Outputs still inside the filter when a stretch ends: output n stands at input sample
@@ -39,7 +42,8 @@ public:
     [[nodiscard]] virtual bool holds(std::size_t channel, std::uint32_t stretch) const noexcept = 0;
     /// Amplitude response of `channel` at `hz` from its nominal carrier, from the taps themselves.
     [[nodiscard]] virtual double response(std::size_t channel, double hz) const noexcept = 0;
-    [[nodiscard]] virtual std::unique_ptr<workspace> make_workspace(std::size_t block_samples) const = 0;
+    [[nodiscard]] virtual std::unique_ptr<workspace>
+    make_workspace(std::size_t block_samples) const = 0;
     /// outputs(block) samples to each channel's span.
     virtual void process(const raw_block&, workspace&, raw_counts&,
                          std::span<const std::span<cf32>>) const noexcept = 0;

@@ -9,9 +9,10 @@
 
 namespace tonewalk {
 
-/// Complex transform of fixed length (any length; products of 2, 3, 5, 7 are fast), single precision, not
-/// normalised: forward then inverse multiplies by size(). Plans are estimated, never timed, so runs repeat
-/// exactly. Construct from any thread; an object is used by one thread at a time. No allocation in run().
+/// Complex transform of fixed length (any length; products of 2, 3, 5, 7 are fast), single
+/// precision, not normalised: forward then inverse multiplies by size(). Plans are estimated, never
+/// timed, so runs repeat exactly. Construct from any thread; an object is used by one thread at a
+/// time. No allocation in run().
 class fft {
 public:
     enum class direction { forward, inverse };
@@ -20,7 +21,7 @@ public:
     fft& operator=(fft&&) noexcept;
     ~fft();
     [[nodiscard]] std::size_t size() const noexcept;
-    [[nodiscard]] std::span<cf32> input() noexcept;         ///< own aligned buffer; kept by run()
+    [[nodiscard]] std::span<cf32> input() noexcept; ///< own aligned buffer; kept by run()
     [[nodiscard]] std::span<const cf32> output() const noexcept;
     void run() noexcept;
 

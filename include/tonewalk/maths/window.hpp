@@ -7,7 +7,8 @@
 
 namespace tonewalk {
 
-/// A cosine-sum window in periodic (DFT-even) form, with its figures of merit computed from its values.
+/// A cosine-sum window in periodic (DFT-even) form, with its figures of merit computed from its
+/// values.
 class window {
 public:
     /// w[n] = a0 - a1 cos(2 pi n/N) + a2 cos(4 pi n/N) - ...
@@ -19,7 +20,8 @@ public:
     [[nodiscard]] double scalloping_loss_db() const noexcept;   ///< at half a bin
     /// |correlation|^2 of the noise powers of two lines `bins` apart (0: 1).
     [[nodiscard]] double power_correlation(double bins) const noexcept;
-    /// Amplitude response at `bins` off a line, 1 at 0 (real: the window is symmetric about its centre).
+    /// Amplitude response at `bins` off a line, 1 at 0 (real: the window is symmetric about its
+    /// centre).
     [[nodiscard]] double response(double bins) const noexcept;
 
 private:
