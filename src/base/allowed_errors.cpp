@@ -91,8 +91,8 @@ std::span<const allowed_error> allowed_errors() noexcept {
 }
 
 double allowed(std::string_view key) noexcept {
-    const auto *const row = std::find_if(
-        table.begin(), table.end(), [key](const allowed_error &each) { return each.key == key; });
+    const auto* const row = std::find_if(
+        table.begin(), table.end(), [key](const allowed_error& each) { return each.key == key; });
     assert(row != table.end());
     return row->allowed;
 }

@@ -29,8 +29,8 @@ public:
             throw std::bad_alloc{};
         csv_set_delim(&parser_, static_cast<unsigned char>(delimiter));
     }
-    field_parser(const field_parser &) = delete;
-    field_parser &operator=(const field_parser &) = delete;
+    field_parser(const field_parser&) = delete;
+    field_parser& operator=(const field_parser&) = delete;
     ~field_parser() { csv_free(&parser_); }
 
     /// Whether the quoting is right; line() is where it stopped.
@@ -42,15 +42,15 @@ public:
     [[nodiscard]] std::size_t line() const noexcept { return line_; }
 
 private:
-    static void take_field(void *text, std::size_t length, void *self) {
-        auto *const parser = static_cast<field_parser *>(self);
-        parser->fields_.emplace_back(static_cast<const char *>(text), length);
+    static void take_field(void* text, std::size_t length, void* self) {
+        auto* const parser = static_cast<field_parser*>(self);
+        parser->fields_.emplace_back(static_cast<const char*>(text), length);
     }
-    static void take_row(int, void *self) { static_cast<field_parser *>(self)->end_row(); }
+    static void take_row(int, void* self) { static_cast<field_parser*>(self)->end_row(); }
 
     void end_row() {
         std::size_t line_ends_inside = 0;
-        for (const std::string &field : fields_)
+        for (const std::string& field : fields_)
             line_ends_inside +=
                 static_cast<std::size_t>(std::count(field.begin(), field.end(), '\n'));
         if (!fields_.empty())
@@ -104,13 +104,13 @@ std::size_t csv_table::column(std::string_view name) const {
     return static_cast<std::size_t>(found - header_.begin());
 }
 
-const std::string &csv_table::text(std::size_t row, std::size_t column) const {
+const std::string& csv_table::text(std::size_t row, std::size_t column) const {
     assert(row < rows_.size() && column < header_.size());
     return rows_[row].fields[column];
 }
 
 double csv_table::number(std::size_t row, std::size_t column) const {
-    const std::string &field = text(row, column);
+    const std::string& field = text(row, column);
     if (const auto value = parse_plain_number(trimmed(field)))
         return *value;
     if (has_decimal_comma(trimmed(field)))
@@ -136,7 +136,7 @@ std::vector<double> csv_table::numbers(std::string_view name) const {
 }
 
 void csv_table::allow_only(std::initializer_list<std::string_view> columns) const {
-    for (const std::string &name : header_)
+    for (const std::string& name : header_)
         if (std::find(columns.begin(), columns.end(), name) == columns.end())
             throw error{fault::malformed,
                         fmt::format("column {} is not known here", in_quotes(name)),
@@ -165,11 +165,11 @@ void csv_table::add(record next) {
              : "give every line the same fields"};
 }
 
-csv_table read_csv(const std::filesystem::path &file) {
+csv_table read_csv(const std::filesystem::path& file) {
     return parse_csv(read_text_file(file), file);
 }
 
-csv_table parse_csv(std::string_view text, const std::filesystem::path &name) {
+csv_table parse_csv(std::string_view text, const std::filesystem::path& name) {
     csv_table table;
     table.name_ = valid_utf8(name.string());
     const std::string plain = with_plain_line_ends(text);

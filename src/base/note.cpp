@@ -68,17 +68,17 @@ void note_set::add(note addition) {
         notes_.push_back(std::move(addition));
 }
 
-void note_set::merge(const note_set &other) {
-    for (const note &each : other.notes_)
+void note_set::merge(const note_set& other) {
+    for (const note& each : other.notes_)
         add(each);
 }
 
 bool note_set::has(note_code code) const noexcept {
     return std::any_of(notes_.begin(), notes_.end(),
-                       [code](const note &each) { return each.code == code; });
+                       [code](const note& each) { return each.code == code; });
 }
 
-const std::vector<std::string> &general_cautions() {
+const std::vector<std::string>& general_cautions() {
     static const std::vector<std::string> cautions{
         "Radio-frequency fields near a transmitting antenna can injure: learn and keep the safe "
         "distance, or have the power lowered, before going close.",

@@ -49,12 +49,12 @@ std::string_view mend_for(int code) {
     }
 }
 
-[[noreturn]] void refuse(const fs::path &target, std::string_view what, int code) {
+[[noreturn]] void refuse(const fs::path& target, std::string_view what, int code) {
     throw error{fault::unwritable, what,
                 target == "-" ? "standard output" : valid_utf8(target.string()), mend_for(code)};
 }
 
-[[noreturn]] void fail(const fs::path &target, int code) {
+[[noreturn]] void fail(const fs::path& target, int code) {
     refuse(target, fmt::format("cannot be written ({})", std::generic_category().message(code)),
            code);
 }
@@ -63,10 +63,10 @@ std::string_view mend_for(int code) {
 /// places.
 class temporary_table {
 public:
-    bool enter(const fs::path &path) noexcept {
+    bool enter(const fs::path& path) noexcept {
         if (path.native().size() >= PATH_MAX)
             return false;
-        for (place &each : places_) {
+        for (place& each : places_) {
             int expected = vacant;
             if (!each.state.compare_exchange_strong(expected, changing))
                 continue;
@@ -76,13 +76,13 @@ public:
         }
         return false;
     }
-    void leave(const fs::path &path) noexcept {
-        for (place &each : places_)
+    void leave(const fs::path& path) noexcept {
+        for (place& each : places_)
             if (each.state.load() == taken && path.native() == each.path)
                 each.state.store(vacant);
     }
     void unlink_all() noexcept {
-        for (const place &each : places_)
+        for (const place& each : places_)
             if (each.state.load() == taken)
                 ::unlink(each.path);
     }
@@ -99,21 +99,21 @@ private:
 temporary_table temporaries;
 
 /// Where a forced write through a symbolic link lands.
-fs::path behind_links(const fs::path &target) {
+fs::path behind_links(const fs::path& target) {
     std::error_code failure;
     fs::path real = fs::canonical(target, failure);
     return failure ? target : real;
 }
 
 /// ".NAME.1234-0.part" beside the target, cut so that the name fits where the target's does.
-fs::path name_beside(const fs::path &target) {
+fs::path name_beside(const fs::path& target) {
     static std::atomic<unsigned> counter{0};
     const std::string tail = fmt::format(".{}-{}.part", ::getpid(), counter++);
     const std::string name = target.filename().string().substr(0, NAME_MAX - 1 - tail.size());
     return target.parent_path() / ("." + name + tail);
 }
 
-void refuse_what_stands_there(const fs::path &target, bool force) {
+void refuse_what_stands_there(const fs::path& target, bool force) {
     if (target.filename().empty() || fs::is_directory(target))
         refuse(target, "is a folder", EISDIR);
     if (!force && fs::exists(fs::symlink_status(target)))
@@ -125,7 +125,7 @@ void refuse_what_stands_there(const fs::path &target, bool force) {
 
 /// Renames, but never over another file: 0 or the reason. Falls back where the file system lacks
 /// the call.
-int rename_without_replacing(const fs::path &from, const fs::path &to) noexcept {
+int rename_without_replacing(const fs::path& from, const fs::path& to) noexcept {
     if (::renameat2(AT_FDCWD, from.c_str(), AT_FDCWD, to.c_str(), RENAME_NOREPLACE) == 0)
         return 0;
     if (errno != EINVAL && errno != ENOSYS)
@@ -136,7 +136,7 @@ int rename_without_replacing(const fs::path &from, const fs::path &to) noexcept 
 }
 
 /// So that the new name survives a power cut. Some file systems cannot; the file itself is synced.
-void sync_folder(const fs::path &target) noexcept {
+void sync_folder(const fs::path& target) noexcept {
     const fs::path folder = target.has_parent_path() ? target.parent_path() : fs::path{"."};
     const int descriptor = ::open(folder.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
     if (descriptor < 0)
@@ -165,7 +165,7 @@ int write_all(int descriptor, std::string_view bytes) noexcept {
 }
 
 /// What an output names on disk, for comparing; nothing for what does not exist and for devices.
-std::optional<std::pair<dev_t, ino_t>> identity(const fs::path &target) {
+std::optional<std::pair<dev_t, ino_t>> identity(const fs::path& target) {
     struct stat facts {};
     const int failed =
         target == "-" ? ::fstat(STDOUT_FILENO, &facts) : ::stat(target.c_str(), &facts);
@@ -174,8 +174,8 @@ std::optional<std::pair<dev_t, ino_t>> identity(const fs::path &target) {
     return std::pair{facts.st_dev, facts.st_ino};
 }
 
-bool same_file(const fs::path &a, const fs::path &b) {
-    const auto whole = [](const fs::path &path) {
+bool same_file(const fs::path& a, const fs::path& b) {
+    const auto whole = [](const fs::path& path) {
         std::error_code failure;
         fs::path found = fs::weakly_canonical(fs::absolute(path), failure);
         return failure ? path.lexically_normal() : found;
@@ -215,11 +215,11 @@ output_file::output_file(std::filesystem::path target, bool force)
     }
 }
 
-output_file::output_file(output_file &&other) noexcept {
+output_file::output_file(output_file&& other) noexcept {
     *this = std::move(other);
 }
 
-output_file &output_file::operator=(output_file &&other) noexcept {
+output_file& output_file::operator=(output_file&& other) noexcept {
     std::swap(target_, other.target_);
     std::swap(temporary_, other.temporary_);
     std::swap(buffer_, other.buffer_);
@@ -249,7 +249,7 @@ void output_file::write(std::string_view text) {
 }
 
 void output_file::write(std::span<const std::byte> bytes) {
-    write(std::string_view{reinterpret_cast<const char *>(bytes.data()), bytes.size()});
+    write(std::string_view{reinterpret_cast<const char*>(bytes.data()), bytes.size()});
 }
 
 void output_file::flush() {

@@ -23,8 +23,8 @@ struct measure {
 
 measure split(std::string_view text) {
     text = trimmed(text);
-    const char *const start = text.data();
-    const char *const end = start + text.size();
+    const char* const start = text.data();
+    const char* const end = start + text.size();
     const bool has_plus = text.starts_with('+') && !text.starts_with("+-");
     double ignored = 0.0;
     const auto [stop, failure] = std::from_chars(start + (has_plus ? 1 : 0), end, ignored);
@@ -37,7 +37,7 @@ std::optional<double> scaled(std::string_view number, int power) {
     std::string text{number};
     if (const std::size_t e = text.find_first_of("eE"); e != text.npos) {
         int own = 0;
-        const char *const digits = text.data() + e + (text[e + 1] == '+' ? 2 : 1);
+        const char* const digits = text.data() + e + (text[e + 1] == '+' ? 2 : 1);
         if (std::from_chars(digits, text.data() + text.size(), own).ec != std::errc{} ||
             std::abs(own) > 400)
             return std::nullopt;
@@ -55,8 +55,8 @@ struct unit_power {
 };
 
 template <std::size_t N>
-std::optional<double> in_units(const measure &typed, const std::array<unit_power, N> &units) {
-    for (const unit_power &each : units)
+std::optional<double> in_units(const measure& typed, const std::array<unit_power, N>& units) {
+    for (const unit_power& each : units)
         if (each.unit == typed.unit)
             return scaled(typed.number, each.power);
     return std::nullopt;
@@ -201,7 +201,7 @@ long parse_whole(std::string_view text, std::string_view option, long lowest, lo
     if (digits.starts_with('+') && !digits.starts_with("+-"))
         digits.remove_prefix(1);
     long value = 0;
-    const char *const end = digits.data() + digits.size();
+    const char* const end = digits.data() + digits.size();
     const auto [stop, failure] = std::from_chars(digits.data(), end, value);
     if (failure == std::errc::result_out_of_range ||
         (failure == std::errc{} && stop == end && (value < lowest || value > highest)))
@@ -221,13 +221,13 @@ std::string format_hz(double hz, int digits) {
     const double rounded = parse_plain_number(fmt::format("{:.{}e}", hz, digits - 1)).value_or(hz);
     const auto prefix =
         std::find_if(prefixes.begin(), prefixes.end() - 1,
-                     [&](const engineering &each) { return std::abs(rounded) >= each.scale; });
+                     [&](const engineering& each) { return std::abs(rounded) >= each.scale; });
     return fmt::format("{:.{}g} {}Hz", rounded / prefix->scale, digits, prefix->prefix);
 }
 
 std::string format_option_hz(double hz, bool as_offset) {
     std::string shortest = fmt::format("{}", hz);
-    for (const auto &[unit, power] : frequency_units) {
+    for (const auto& [unit, power] : frequency_units) {
         const std::string number = fmt::format("{}", hz / std::pow(10.0, power));
         if (number.size() + unit.size() < shortest.size() && scaled(number, power) == hz)
             shortest = fmt::format("{}{}", number, unit);

@@ -42,7 +42,7 @@ std::size_t sequence_length(std::string_view text) noexcept {
     return wrong ? 0 : length;
 }
 
-[[noreturn]] void throw_unreadable(const std::filesystem::path &path, int code) {
+[[noreturn]] void throw_unreadable(const std::filesystem::path& path, int code) {
     throw error{fault::unreadable, "cannot be read (" + std::generic_category().message(code) + ")",
                 valid_utf8(path.string()), "check the name and who may read it"};
 }
@@ -58,7 +58,7 @@ std::string_view trimmed(std::string_view text) noexcept {
 
 std::string lower_case(std::string_view text) {
     std::string lowered{text};
-    for (char &letter : lowered)
+    for (char& letter : lowered)
         if (letter >= 'A' && letter <= 'Z')
             letter = static_cast<char>(letter - 'A' + 'a');
     return lowered;
@@ -85,7 +85,7 @@ bool has_decimal_comma(std::string_view text) {
 std::string in_quotes(std::string_view text) {
     constexpr std::size_t longest = 80;
     std::string line = valid_utf8(text.substr(0, longest));
-    for (char &letter : line)
+    for (char& letter : line)
         if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
             letter = '?';
     return '"' + line + (text.size() > longest ? "...\"" : "\"");
@@ -102,12 +102,12 @@ std::string valid_utf8(std::string_view text) {
     return valid;
 }
 
-std::string read_text_file(const std::filesystem::path &path) {
+std::string read_text_file(const std::filesystem::path& path) {
     std::error_code ignored;
     if (std::filesystem::is_directory(path, ignored))
         throw_unreadable(path, EISDIR);
-    const std::unique_ptr<std::FILE, int (*)(std::FILE *)> file{std::fopen(path.c_str(), "rb"),
-                                                                &std::fclose};
+    const std::unique_ptr<std::FILE, int (*)(std::FILE*)> file{std::fopen(path.c_str(), "rb"),
+                                                               &std::fclose};
     if (!file)
         throw_unreadable(path, errno);
     std::string text;

@@ -63,7 +63,7 @@ private:
     bool ok_ = true;
 };
 
-sys_days read_date(reader &in) {
+sys_days read_date(reader& in) {
     const int year_number = in.digits(4, 9999);
     in.need("-");
     const int month_number = in.digits(2, 12);
@@ -79,7 +79,7 @@ sys_days read_date(reader &in) {
     return sys_days{date};
 }
 
-nanoseconds read_clock(reader &in) {
+nanoseconds read_clock(reader& in) {
     nanoseconds since_midnight = hours{in.digits(2, 23)};
     in.need(":");
     since_midnight += minutes{in.digits(2, 59)};
@@ -90,7 +90,7 @@ nanoseconds read_clock(reader &in) {
     return since_midnight;
 }
 
-minutes read_zone(reader &in) {
+minutes read_zone(reader& in) {
     if (in.take("Zz"))
         return minutes{0};
     const int sign = in.starts_with("-") ? -1 : 1;

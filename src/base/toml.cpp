@@ -44,7 +44,7 @@ namespace {
 
 using node = toml_table::node;
 
-error at_line(const std::filesystem::path &file, unsigned line, std::string_view key,
+error at_line(const std::filesystem::path& file, unsigned line, std::string_view key,
               std::string_view what, std::string_view mend) {
     const std::string name = valid_utf8(file.string());
     const std::string where = key.empty() ? fmt::format("{}, line {}", name, line)
@@ -56,11 +56,11 @@ std::string dotted(std::string_view path, std::string_view key) {
     return path.empty() ? std::string{key} : fmt::format("{}.{}", path, key);
 }
 
-std::shared_ptr<node> take_table(const toml::table &, std::shared_ptr<const std::filesystem::path>,
+std::shared_ptr<node> take_table(const toml::table&, std::shared_ptr<const std::filesystem::path>,
                                  std::string path);
 
 template <typename DateOrTime>
-node::date_time date_text(const DateOrTime &value) {
+node::date_time date_text(const DateOrTime& value) {
     std::ostringstream text;
     text.imbue(std::locale::classic());
     text << value;
@@ -68,71 +68,71 @@ node::date_time date_text(const DateOrTime &value) {
 }
 
 /// Copies what the parser found, so that the rest of the program never meets the parser's types.
-node::value take_value(const toml::node &found,
-                       const std::shared_ptr<const std::filesystem::path> &file,
-                       const std::string &path) {
+node::value take_value(const toml::node& found,
+                       const std::shared_ptr<const std::filesystem::path>& file,
+                       const std::string& path) {
     node::value taken;
     taken.line = found.source().begin.line;
-    if (const auto *table = found.as_table()) {
+    if (const auto* table = found.as_table()) {
         taken.held = node::subtable{take_table(*table, file, path)};
-    } else if (const auto *array = found.as_array()) {
+    } else if (const auto* array = found.as_array()) {
         node::list list;
-        for (const toml::node &each : *array)
+        for (const toml::node& each : *array)
             list.push_back(take_value(each, file, fmt::format("{}[{}]", path, list.size())));
         taken.held = std::move(list);
-    } else if (const auto *yes_no = found.as_boolean()) {
+    } else if (const auto* yes_no = found.as_boolean()) {
         taken.held = yes_no->get();
-    } else if (const auto *whole = found.as_integer()) {
+    } else if (const auto* whole = found.as_integer()) {
         taken.held = whole->get();
-    } else if (const auto *number = found.as_floating_point()) {
+    } else if (const auto* number = found.as_floating_point()) {
         if (!std::isfinite(number->get()))
             throw at_line(*file, taken.line, path, "is not a finite number",
                           "write a plain number");
         taken.held = number->get();
-    } else if (const auto *text = found.as_string()) {
+    } else if (const auto* text = found.as_string()) {
         taken.held = text->get();
-    } else if (const auto *date_time = found.as_date_time()) {
+    } else if (const auto* date_time = found.as_date_time()) {
         taken.held = date_text(date_time->get());
-    } else if (const auto *date = found.as_date()) {
+    } else if (const auto* date = found.as_date()) {
         taken.held = date_text(date->get());
-    } else if (const auto *time = found.as_time()) {
+    } else if (const auto* time = found.as_time()) {
         taken.held = date_text(time->get());
     }
     return taken;
 }
 
-std::shared_ptr<node> take_table(const toml::table &found,
+std::shared_ptr<node> take_table(const toml::table& found,
                                  std::shared_ptr<const std::filesystem::path> file,
                                  std::string path) {
     auto taken = std::make_shared<node>();
     taken->file = std::move(file);
     taken->path = std::move(path);
     taken->line = found.source().begin.line;
-    for (const auto &[key, value] : found)
+    for (const auto& [key, value] : found)
         taken->entries.push_back({std::string{key.str()},
                                   take_value(value, taken->file, dotted(taken->path, key.str())),
                                   false});
     // The parser sorts by name; people read from top to bottom.
     std::stable_sort(
         taken->entries.begin(), taken->entries.end(),
-        [](const node::entry &a, const node::entry &b) { return a.content.line < b.content.line; });
+        [](const node::entry& a, const node::entry& b) { return a.content.line < b.content.line; });
     return taken;
 }
 
-error wrong_value(const node &table, const node::value &value, std::string_view key,
+error wrong_value(const node& table, const node::value& value, std::string_view key,
                   std::string_view what, std::string_view mend) {
     return at_line(*table.file, value.line, dotted(table.path, key), what, mend);
 }
 
-error missing(const node &table, std::string_view key, std::string_view mend) {
+error missing(const node& table, std::string_view key, std::string_view mend) {
     return at_line(*table.file, table.line, dotted(table.path, key), "is missing", mend);
 }
 
 /// The value of a key that the reader knows; remembers that it was asked for.
-const node::value *look_up(const node &table, std::string_view key) {
+const node::value* look_up(const node& table, std::string_view key) {
     if (std::find(table.known.begin(), table.known.end(), key) == table.known.end())
         table.known.emplace_back(key);
-    for (const node::entry &each : table.entries) {
+    for (const node::entry& each : table.entries) {
         if (each.key != key)
             continue;
         each.asked = true;
@@ -142,34 +142,34 @@ const node::value *look_up(const node &table, std::string_view key) {
 }
 
 template <typename Held>
-const Held *as(const node::value &value) {
+const Held* as(const node::value& value) {
     return std::get_if<Held>(&value.held);
 }
 
-std::optional<double> as_number(const node::value &value) {
-    if (const auto *number = as<double>(value))
+std::optional<double> as_number(const node::value& value) {
+    if (const auto* number = as<double>(value))
         return *number;
-    if (const auto *whole = as<std::int64_t>(value))
+    if (const auto* whole = as<std::int64_t>(value))
         return static_cast<double>(*whole);
     return std::nullopt;
 }
 
 template <typename Held>
-std::optional<Held> get(const node &table, std::string_view key, std::string_view wanted,
+std::optional<Held> get(const node& table, std::string_view key, std::string_view wanted,
                         std::string_view example) {
-    const node::value *const value = look_up(table, key);
+    const node::value* const value = look_up(table, key);
     if (value == nullptr)
         return std::nullopt;
-    if (const auto *held = as<Held>(*value))
+    if (const auto* held = as<Held>(*value))
         return *held;
     throw wrong_value(table, *value, key, fmt::format("is not {}", wanted),
                       fmt::format("write it like {} = {}", key, example));
 }
 
-void finish_value(const node::value &value);
+void finish_value(const node::value& value);
 
-void finish_table(const node &table) {
-    for (const node::entry &each : table.entries) {
+void finish_table(const node& table) {
+    for (const node::entry& each : table.entries) {
         if (!each.asked) {
             std::vector<std::string_view> known{table.known.begin(), table.known.end()};
             throw wrong_value(table, each.content, each.key, "is not known here",
@@ -179,11 +179,11 @@ void finish_table(const node &table) {
     }
 }
 
-void finish_value(const node::value &value) {
-    if (const auto *table = as<node::subtable>(value))
+void finish_value(const node::value& value) {
+    if (const auto* table = as<node::subtable>(value))
         finish_table(**table);
-    else if (const auto *list = as<node::list>(value))
-        for (const node::value &each : *list)
+    else if (const auto* list = as<node::list>(value))
+        for (const node::value& each : *list)
             finish_value(each);
 }
 
@@ -194,7 +194,7 @@ bool toml_table::has(std::string_view key) const {
 }
 
 std::optional<double> toml_table::number(std::string_view key) const {
-    const node::value *const value = look_up(*node_, key);
+    const node::value* const value = look_up(*node_, key);
     if (value == nullptr)
         return std::nullopt;
     const auto number = as_number(*value);
@@ -217,11 +217,11 @@ std::optional<std::string> toml_table::text(std::string_view key) const {
 }
 
 std::optional<utc_time> toml_table::utc(std::string_view key) const {
-    const node::value *const value = look_up(*node_, key);
+    const node::value* const value = look_up(*node_, key);
     if (value == nullptr)
         return std::nullopt;
-    const auto *const plain = as<std::string>(*value);
-    const auto *const dated = as<node::date_time>(*value);
+    const auto* const plain = as<std::string>(*value);
+    const auto* const dated = as<node::date_time>(*value);
     const auto time = parse_utc(plain != nullptr ? *plain : dated != nullptr ? dated->text : "");
     if (!time)
         throw wrong_value(*node_, *value, key, "is not a date and time with its zone",
@@ -234,7 +234,7 @@ std::optional<std::vector<double>> toml_table::numbers(std::string_view key) con
     if (!list)
         return std::nullopt;
     std::vector<double> taken;
-    for (const node::value &each : *list) {
+    for (const node::value& each : *list) {
         const auto number = as_number(each);
         if (!number)
             throw wrong_value(*node_, each, key, "holds something that is no number",
@@ -249,8 +249,8 @@ std::optional<std::vector<std::string>> toml_table::texts(std::string_view key) 
     if (!list)
         return std::nullopt;
     std::vector<std::string> taken;
-    for (const node::value &each : *list) {
-        const auto *const text = as<std::string>(each);
+    for (const node::value& each : *list) {
+        const auto* const text = as<std::string>(each);
         if (text == nullptr)
             throw wrong_value(*node_, each, key, "holds something that is no text",
                               fmt::format("write it like {} = [\"a\", \"b\"]", key));
@@ -260,30 +260,30 @@ std::optional<std::vector<std::string>> toml_table::texts(std::string_view key) 
 }
 
 std::optional<toml_table> toml_table::table(std::string_view key) const {
-    const node::value *const value = look_up(*node_, key);
+    const node::value* const value = look_up(*node_, key);
     if (value == nullptr)
         return std::nullopt;
-    if (const auto *held = as<node::subtable>(*value))
+    if (const auto* held = as<node::subtable>(*value))
         return toml_table{*held};
     throw wrong_value(*node_, *value, key, "is not a table", fmt::format("write [{}]", key));
 }
 
 std::vector<toml_table> toml_table::tables(std::string_view key) const {
-    const node::value *const value = look_up(*node_, key);
+    const node::value* const value = look_up(*node_, key);
     if (value == nullptr)
         return {};
-    if (const auto *single = as<node::subtable>(*value))
+    if (const auto* single = as<node::subtable>(*value))
         return {toml_table{*single}};
     std::vector<toml_table> taken;
-    const auto *const list = as<node::list>(*value);
-    const auto refusal = [&](const node::value &at) {
+    const auto* const list = as<node::list>(*value);
+    const auto refusal = [&](const node::value& at) {
         return wrong_value(*node_, at, key, "is not a list of tables",
                            fmt::format("write [[{}]]", key));
     };
     if (list == nullptr)
         throw refusal(*value);
-    for (const node::value &each : *list) {
-        const auto *const held = as<node::subtable>(each);
+    for (const node::value& each : *list) {
+        const auto* const held = as<node::subtable>(each);
         if (held == nullptr)
             throw refusal(each);
         taken.emplace_back(*held);
@@ -317,31 +317,31 @@ void toml_table::finish() const {
 }
 
 error toml_table::wrong(std::string_view key, std::string_view what, std::string_view mend) const {
-    const node::value *const value = look_up(*node_, key);
+    const node::value* const value = look_up(*node_, key);
     return at_line(*node_->file, value != nullptr ? value->line : node_->line,
                    dotted(node_->path, key), what, mend);
 }
 
 std::vector<std::string> toml_table::keys() const {
     std::vector<std::string> names;
-    for (const node::entry &each : node_->entries)
+    for (const node::entry& each : node_->entries)
         names.push_back(each.key);
     return names;
 }
 
-const std::filesystem::path &toml_table::file() const noexcept {
+const std::filesystem::path& toml_table::file() const noexcept {
     return *node_->file;
 }
 
-toml_table read_toml(const std::filesystem::path &file) {
+toml_table read_toml(const std::filesystem::path& file) {
     return parse_toml(read_text_file(file), file);
 }
 
-toml_table parse_toml(std::string_view text, const std::filesystem::path &name) {
+toml_table parse_toml(std::string_view text, const std::filesystem::path& name) {
     const auto file = std::make_shared<const std::filesystem::path>(name);
     try {
         return toml_table{take_table(toml::parse(text), file, {})};
-    } catch (const toml::parse_error &failure) {
+    } catch (const toml::parse_error& failure) {
         throw at_line(*file, failure.source().begin.line, {},
                       fmt::format("is not TOML ({})", failure.description()), "mend that line");
     }

@@ -72,8 +72,18 @@ void write_members(json_stream& json, const sheet& page) {
         std::visit(item_writer{json}, item);
 }
 
+/// To the nanosecond, without trailing zeros.
+std::string shortest_utc(utc_time time) {
+    std::string text = format_utc(time, 9);
+    text.pop_back(); // Z
+    text.erase(text.find_last_not_of('0') + 1);
+    if (text.back() == '.')
+        text.pop_back();
+    return text + 'Z';
+}
+
 sheet described(const recording_summary& recording) {
-    const auto time = recording.start_utc ? cell{format_utc(*recording.start_utc, 9)} : cell{};
+    const auto time = recording.start_utc ? cell{shortest_utc(*recording.start_utc)} : cell{};
     const auto hash = recording.sha512.empty() ? cell{} : cell{recording.sha512};
     sheet page;
     page.add("name", "", cell{recording.name});

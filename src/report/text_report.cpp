@@ -118,6 +118,18 @@ private:
         return grid;
     }
 
+    /// Text speaks for itself, yes is said by its name, no is left out.
+    [[nodiscard]] static std::string part_of(const sheet_table& table, const value_group& group,
+                                             std::size_t row) {
+        const sheet_column& column = table.columns[group.value];
+        const cell held = column.at(row);
+        if (const auto* words = std::get_if<std::string>(&held))
+            return harmless(*words);
+        if (const auto* yes = std::get_if<bool>(&held))
+            return *yes ? label_of(column.key) : "";
+        return label_of(column.key) + ' ' + cell_of(table, group, row, true);
+    }
+
     /// "peak, time 1.2 s, level ...": for a narrow screen.
     [[nodiscard]] std::string listed(const sheet_table& table, std::size_t rows,
                                      std::size_t indent) const {
@@ -125,11 +137,9 @@ private:
         for (std::size_t row = 0; row < rows; ++row) {
             strings parts;
             for (const value_group& each : groups_of(table)) {
-                const std::string value = cell_of(table, each, row, true);
-                const bool speaks =
-                    std::holds_alternative<std::string>(table.columns[each.value].at(row));
-                parts.push_back(speaks ? value
-                                       : label_of(table.columns[each.value].key) + ' ' + value);
+                std::string part = part_of(table, each, row);
+                if (!part.empty())
+                    parts.push_back(std::move(part));
             }
             text += layout_.paragraph(fmt::format("{}", fmt::join(parts, ", ")), indent, 2);
         }

@@ -10,7 +10,7 @@ using namespace tonewalk;
 
 TEST(AllowedErrors, HoldEachKeyOnceWithWordsAndAFiniteFigure) {
     std::set<std::string_view> keys;
-    for (const allowed_error &row : allowed_errors()) {
+    for (const allowed_error& row : allowed_errors()) {
         EXPECT_TRUE(keys.insert(row.key).second) << row.key;
         EXPECT_FALSE(row.quantity.empty() || row.conditions.empty() || row.unit.empty()) << row.key;
         EXPECT_TRUE(std::isfinite(row.allowed)) << row.key;

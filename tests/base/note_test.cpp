@@ -43,9 +43,9 @@ TEST(NoteSet, KeepsTheFirstNoteOfACodeInOrderOfArrival) {
 
 TEST(GeneralCautions, SpeakOfFieldsHeightsVoltageLicenceAndOfNoVerdict) {
     std::string all;
-    for (const std::string &line : general_cautions())
+    for (const std::string& line : general_cautions())
         all += line + '\n';
-    for (const char *word :
+    for (const char* word :
          {"fields", "climb", "high voltage", "licence", "local rules", "not a certificate"})
         EXPECT_NE(all.find(word), all.npos) << word;
 }

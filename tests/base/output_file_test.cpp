@@ -22,7 +22,7 @@ using namespace tonewalk;
 using test::caught;
 namespace fs = std::filesystem;
 
-std::size_t files_in(const test::temporary_folder &folder) {
+std::size_t files_in(const test::temporary_folder& folder) {
     return static_cast<std::size_t>(
         std::distance(fs::directory_iterator{folder.path()}, fs::directory_iterator{}));
 }
@@ -38,8 +38,8 @@ public:
         ::setrlimit(RLIMIT_FSIZE, &limit);
         handler_ = std::signal(SIGXFSZ, SIG_IGN);
     }
-    size_limit(const size_limit &) = delete;
-    size_limit &operator=(const size_limit &) = delete;
+    size_limit(const size_limit&) = delete;
+    size_limit& operator=(const size_limit&) = delete;
     ~size_limit() {
         ::setrlimit(RLIMIT_FSIZE, &before_);
         std::signal(SIGXFSZ, handler_);
@@ -147,11 +147,11 @@ TEST(OutputFile, LetsExactlyOneOfManyRacersWin) {
                 file.write(std::string(10'000, static_cast<char>('a' + i)));
                 file.commit();
                 ++winners;
-            } catch (const error &) {
+            } catch (const error&) {
                 ++losers;
             }
         });
-    for (std::thread &each : racers)
+    for (std::thread& each : racers)
         each.join();
     EXPECT_EQ(winners, 1);
     EXPECT_EQ(losers, 7);
@@ -221,7 +221,7 @@ TEST(OutputFile, MovesWithoutLosingItsTemporary) {
     files.back().write("a");
     files.emplace_back(folder / "b.csv"); // grows: the first one moves
     files.back().write("b");
-    for (output_file &each : files)
+    for (output_file& each : files)
         each.commit();
     EXPECT_EQ(test::read_file(folder / "a.csv"), "a");
     EXPECT_EQ(test::read_file(folder / "b.csv"), "b");

@@ -39,7 +39,7 @@ TEST(ParseHz, RefusesInOneLineThatNamesOptionTypingAndExample) {
     EXPECT_TRUE(comma.says("--width: \"12,5k\" is not a frequency; use a decimal point"))
         << comma.line;
     EXPECT_TRUE(comma.says("145.2M")) << comma.line;
-    for (const char *text : {"", "k", "inf", "nan", "1e999", "0x10", "1m", "1 000", "+-3", "--3",
+    for (const char* text : {"", "k", "inf", "nan", "1e999", "0x10", "1m", "1 000", "+-3", "--3",
                              "1kk", "5s", "1e5e5", "1e", "infinity"})
         EXPECT_EQ(caught([&] { (void)parse_hz(text, "--rate"); }).kind, fault::bad_request) << text;
 }
@@ -61,7 +61,7 @@ TEST(ParseSeconds, RefusesABareMByName) {
     const auto metres = caught([] { (void)parse_seconds("3m", "--from"); });
     EXPECT_EQ(metres.kind, fault::bad_request);
     EXPECT_TRUE(metres.says("metres or minutes")) << metres.line;
-    for (const char *text : {"", "1:60", "1:2:3:4", "-1:00", "1:-1", "1.5:00", "1e1:00", ":30",
+    for (const char* text : {"", "1:60", "1:2:3:4", "-1:00", "1:-1", "1.5:00", "1e1:00", ":30",
                              "30:", "5k", "1,5", "inf"})
         EXPECT_EQ(caught([&] { (void)parse_seconds(text, "--from"); }).kind, fault::bad_request)
             << text;
@@ -90,7 +90,7 @@ TEST(ParseWhole, KeepsToItsRange) {
     EXPECT_TRUE(caught([] {
                     (void)parse_whole("99999999999999999999", "--lane", 0, 7);
                 }).says("from 0 to 7"));
-    for (const char *text : {"", "1.5", "two", "4x", "+-4"})
+    for (const char* text : {"", "1.5", "two", "4x", "+-4"})
         EXPECT_EQ(caught([&] { (void)parse_whole(text, "--threads", 1, 64); }).kind,
                   fault::bad_request)
             << text;

@@ -7,10 +7,10 @@ namespace {
 
 using namespace tonewalk;
 
-std::vector<std::string> keys(const sheet &page) {
+std::vector<std::string> keys(const sheet& page) {
     std::vector<std::string> found;
-    for (const auto &item : page.items)
-        if (const auto *entry = std::get_if<sheet_entry>(&item))
+    for (const auto& item : page.items)
+        if (const auto* entry = std::get_if<sheet_entry>(&item))
             found.push_back(entry->key);
     return found;
 }

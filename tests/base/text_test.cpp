@@ -11,7 +11,7 @@ using namespace tonewalk;
 TEST(ParsePlainNumber, TakesTheWholeTextOrNothing) {
     EXPECT_EQ(parse_plain_number("-3.5e2"), -350.0);
     EXPECT_EQ(parse_plain_number("+1"), 1.0);
-    for (const char *text : {"", " 1", "1 ", "1,5", "inf", "nan", "1e400", "+-1", "++1", "0x1p3"})
+    for (const char* text : {"", " 1", "1 ", "1,5", "inf", "nan", "1e400", "+-1", "++1", "0x1p3"})
         EXPECT_FALSE(parse_plain_number(text).has_value()) << text;
 }
 

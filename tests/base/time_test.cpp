@@ -38,7 +38,7 @@ TEST(ParseUtc, CountsSecond60AsTheNextMinutesFirst) {
 }
 
 TEST(ParseUtc, RefusesWhatIsNoSuchTime) {
-    for (const char *text :
+    for (const char* text :
          {"", "2026-05-04", "2026-05-04T09:30:00", "2026-05-04T09:30Z", "2026-02-29T00:00:00Z",
           "2026-13-01T00:00:00Z", "2026-00-10T00:00:00Z", "2026-05-04T24:00:00Z",
           "2026-05-04T09:60:00Z", "2026-05-04T09:30:61Z", "2026-05-04T09:30:00.Z",
@@ -66,7 +66,7 @@ TEST(MovedBy, RoundsToTheNanosecondFarFromTheStart) {
 
 // Outside truth: GNU date, which knows the calendar on its own.
 TEST(OutsideUtc, AgreesWithTheSystemsCalendar) {
-    for (const char *text :
+    for (const char* text :
          {"1999-12-31T23:59:59Z", "2000-02-29T12:00:00Z", "2016-12-31T23:59:59+05:30",
           "1900-03-01T00:00:00Z", "2100-03-01T00:00:00-11:00", "2261-12-30T00:00:01Z"}) {
         const auto outside = test::run_command(fmt::format("date -u -d {} +%s", text));

@@ -66,7 +66,7 @@ TEST(TomlTable, RefusesKeysThatNobodyAskedForWithAHint) {
 TEST(TomlTable, FinishesQuietlyWhenEveryKeyWasAskedFor) {
     const toml_table root = parse_toml("a = 1\n[[b]]\nc = 2\n[[b]]\nc = 3\n", "x.toml");
     EXPECT_EQ(root.whole("a"), 1);
-    for (const toml_table &each : root.tables("b"))
+    for (const toml_table& each : root.tables("b"))
         EXPECT_TRUE(each.whole("c").has_value());
     EXPECT_NO_THROW(root.finish());
 }
@@ -102,7 +102,7 @@ TEST(MalformedToml, IsRefusedWithItsLine) {
         caught([] { (void)parse_toml("a = 1\nb = = 2\n", "x.toml"); }).says("x.toml, line 2"));
     EXPECT_TRUE(
         caught([] { (void)parse_toml("a = 1\na = 2\n", "x.toml"); }).says("x.toml, line 2"));
-    for (const char *number : {"inf", "-inf", "nan"})
+    for (const char* number : {"inf", "-inf", "nan"})
         EXPECT_TRUE(caught([&] {
                         (void)parse_toml(std::string{"\na = "} + number, "x.toml");
                     }).says("x.toml, line 2, a: is not a finite number"));

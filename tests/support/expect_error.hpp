@@ -12,15 +12,15 @@ struct caught_error {
     std::optional<fault> kind; ///< empty: nothing was thrown
     int exit_status = 0;
     std::string line;
-    [[nodiscard]] bool says(const std::string &part) const { return line.find(part) != line.npos; }
+    [[nodiscard]] bool says(const std::string& part) const { return line.find(part) != line.npos; }
 };
 
 /// Runs `action` and keeps the tonewalk::error that it throws.
 template <typename Action>
-caught_error caught(Action &&action) {
+caught_error caught(Action&& action) {
     try {
         action();
-    } catch (const error &failure) {
+    } catch (const error& failure) {
         return {failure.kind(), failure.exit_status(), failure.what()};
     }
     return {};

@@ -16,8 +16,8 @@ struct command_result {
 };
 
 /// Runs a shell command line and waits for it.
-inline command_result run_command(const std::string &line) {
-    std::FILE *const pipe = ::popen((line + " 2>&1").c_str(), "r");
+inline command_result run_command(const std::string& line) {
+    std::FILE* const pipe = ::popen((line + " 2>&1").c_str(), "r");
     if (pipe == nullptr)
         return {};
     command_result result;

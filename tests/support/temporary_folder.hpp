@@ -22,13 +22,13 @@ public:
             throw std::system_error{errno, std::generic_category(), name};
         path_ = name;
     }
-    temporary_folder(const temporary_folder &) = delete;
-    temporary_folder &operator=(const temporary_folder &) = delete;
+    temporary_folder(const temporary_folder&) = delete;
+    temporary_folder& operator=(const temporary_folder&) = delete;
     ~temporary_folder() {
         std::error_code ignored;
         std::filesystem::remove_all(path_, ignored);
     }
-    [[nodiscard]] const std::filesystem::path &path() const noexcept { return path_; }
+    [[nodiscard]] const std::filesystem::path& path() const noexcept { return path_; }
     [[nodiscard]] std::filesystem::path operator/(std::string_view name) const {
         return path_ / name;
     }
@@ -37,14 +37,14 @@ private:
     std::filesystem::path path_;
 };
 
-inline void write_file(const std::filesystem::path &path, std::string_view text) {
+inline void write_file(const std::filesystem::path& path, std::string_view text) {
     std::ofstream file{path, std::ios::binary};
     file.write(text.data(), static_cast<std::streamsize>(text.size()));
     if (!file.flush())
         throw std::system_error{std::make_error_code(std::errc::io_error), path.string()};
 }
 
-inline std::string read_file(const std::filesystem::path &path) {
+inline std::string read_file(const std::filesystem::path& path) {
     std::ifstream file{path, std::ios::binary};
     if (!file)
         throw std::system_error{std::make_error_code(std::errc::no_such_file_or_directory),

@@ -17,12 +17,12 @@ namespace tonewalk {
 class csv_table {
 public:
     [[nodiscard]] std::size_t rows() const noexcept { return rows_.size(); }
-    [[nodiscard]] const std::vector<std::string> &header() const noexcept { return header_; }
+    [[nodiscard]] const std::vector<std::string>& header() const noexcept { return header_; }
     [[nodiscard]] bool has(std::string_view column) const noexcept;
 
     /// Position of a column; throws, with the nearest name, where there is none.
     [[nodiscard]] std::size_t column(std::string_view name) const;
-    [[nodiscard]] const std::string &text(std::size_t row, std::size_t column) const;
+    [[nodiscard]] const std::string& text(std::size_t row, std::size_t column) const;
     /// A finite number; throws where the field is empty or no number, naming a decimal comma as
     /// such.
     [[nodiscard]] double number(std::size_t row, std::size_t column) const;
@@ -36,7 +36,7 @@ public:
     [[nodiscard]] std::string where(std::size_t row, std::size_t column) const;
 
 private:
-    friend csv_table parse_csv(std::string_view text, const std::filesystem::path &name);
+    friend csv_table parse_csv(std::string_view text, const std::filesystem::path& name);
     struct record {
         std::vector<std::string> fields;
         std::size_t line = 0;
@@ -48,7 +48,7 @@ private:
 };
 
 /// Throws error{unreadable} too.
-[[nodiscard]] csv_table read_csv(const std::filesystem::path &);
-[[nodiscard]] csv_table parse_csv(std::string_view text, const std::filesystem::path &name);
+[[nodiscard]] csv_table read_csv(const std::filesystem::path&);
+[[nodiscard]] csv_table parse_csv(std::string_view text, const std::filesystem::path& name);
 
 } // namespace tonewalk

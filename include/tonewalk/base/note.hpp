@@ -67,9 +67,9 @@ struct note {
 class note_set {
 public:
     void add(note);
-    void merge(const note_set &);
+    void merge(const note_set&);
     [[nodiscard]] bool has(note_code) const noexcept;
-    [[nodiscard]] const std::vector<note> &all() const noexcept { return notes_; }
+    [[nodiscard]] const std::vector<note>& all() const noexcept { return notes_; }
 
 private:
     std::vector<note> notes_;
@@ -77,6 +77,6 @@ private:
 
 /// Cautions that stand on outputs: the work can hurt people. One sentence each, general, deferring
 /// to local rules and licensed practice; never a verdict.
-[[nodiscard]] const std::vector<std::string> &general_cautions();
+[[nodiscard]] const std::vector<std::string>& general_cautions();
 
 } // namespace tonewalk

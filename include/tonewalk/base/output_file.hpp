@@ -18,8 +18,8 @@ public:
     /// Checks that the target can be written (folder there, no file in the way) and opens the
     /// temporary.
     explicit output_file(std::filesystem::path target, bool force = false);
-    output_file(output_file &&) noexcept;
-    output_file &operator=(output_file &&) noexcept;
+    output_file(output_file&&) noexcept;
+    output_file& operator=(output_file&&) noexcept;
     ~output_file();
 
     void write(std::string_view text); ///< buffered
@@ -27,7 +27,7 @@ public:
     void commit();
 
     /// Where the bytes are now, for a library that wants a path or descriptor (libsndfile).
-    [[nodiscard]] const std::filesystem::path &path_in_progress() const noexcept {
+    [[nodiscard]] const std::filesystem::path& path_in_progress() const noexcept {
         return temporary_;
     }
     [[nodiscard]] int descriptor() const noexcept { return descriptor_; }

@@ -17,7 +17,7 @@ public:
 /// How a long job is run: when to stop, whom to tell, how many threads.
 struct run_control {
     std::stop_token stop;
-    progress_sink *progress = nullptr;
+    progress_sink* progress = nullptr;
     unsigned threads = 1;
 };
 

@@ -63,15 +63,15 @@ struct sheet {
     std::vector<std::variant<sheet_entry, sheet_table, sheet_group>> items;
     std::vector<curve> curves;
 
-    sheet &add(std::string key, std::string unit, cell value);
+    sheet& add(std::string key, std::string unit, cell value);
     /// key, key_u95
-    sheet &add(std::string key, std::string unit, const estimate &);
+    sheet& add(std::string key, std::string unit, const estimate&);
     /// key, key_low95, key_high95, key_u95
-    sheet &add(std::string key, std::string unit, const interval_estimate &);
-    sheet &add(sheet_table);
-    sheet &add(std::string key, sheet part);
-    sheet &add(curve);
-    [[nodiscard]] const cell *
+    sheet& add(std::string key, std::string unit, const interval_estimate&);
+    sheet& add(sheet_table);
+    sheet& add(std::string key, sheet part);
+    sheet& add(curve);
+    [[nodiscard]] const cell*
     find(std::string_view key) const noexcept; ///< a top-level entry, or null
 };
 

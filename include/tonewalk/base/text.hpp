@@ -29,6 +29,6 @@ namespace tonewalk {
 [[nodiscard]] std::string valid_utf8(std::string_view text);
 
 /// The whole of a small text file, without a UTF-8 byte-order mark. Throws error{unreadable}.
-[[nodiscard]] std::string read_text_file(const std::filesystem::path &);
+[[nodiscard]] std::string read_text_file(const std::filesystem::path&);
 
 } // namespace tonewalk

@@ -49,7 +49,7 @@ public:
                               std::string_view mend) const;
 
     [[nodiscard]] std::vector<std::string> keys() const; ///< as they stand in the file
-    [[nodiscard]] const std::filesystem::path &file() const noexcept;
+    [[nodiscard]] const std::filesystem::path& file() const noexcept;
 
     struct node; ///< private to the implementation
     explicit toml_table(std::shared_ptr<const node> root) noexcept : node_{std::move(root)} {}
@@ -59,8 +59,8 @@ private:
 };
 
 /// Throws error{unreadable} or error{malformed} with the line.
-[[nodiscard]] toml_table read_toml(const std::filesystem::path &);
+[[nodiscard]] toml_table read_toml(const std::filesystem::path&);
 /// The same from text; `name` stands in error lines and gives the folder for file names inside.
-[[nodiscard]] toml_table parse_toml(std::string_view text, const std::filesystem::path &name);
+[[nodiscard]] toml_table parse_toml(std::string_view text, const std::filesystem::path& name);
 
 } // namespace tonewalk
