@@ -155,7 +155,8 @@ public:
     void add(chunk_values<value_of<Stored>>& values) noexcept {
         for (std::size_t n = 0; n < chunk; n += sum_lanes)
             for (std::size_t lane = 0; lane < sum_lanes; ++lane)
-                add(lane, values.i()[n + lane], values.q()[n + lane]);
+                add(lane, static_cast<product>(values.i()[n + lane]),
+                    static_cast<product>(values.q()[n + lane]));
     }
 
     cell_sums result(bool inverted) const noexcept {

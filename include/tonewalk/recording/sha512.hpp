@@ -12,8 +12,8 @@ namespace tonewalk {
 class sha512_hash {
 public:
     sha512_hash();
-    sha512_hash(sha512_hash &&) noexcept;
-    sha512_hash &operator=(sha512_hash &&) noexcept;
+    sha512_hash(sha512_hash&&) noexcept;
+    sha512_hash& operator=(sha512_hash&&) noexcept;
     ~sha512_hash();
 
     void add(std::span<const std::byte> bytes);

@@ -44,6 +44,6 @@ struct sigmf_document {
 
 /// The text of the .sigmf-meta file, SigMF 1.2.5, indented, ending in a newline. Bytes of texts
 /// that are no UTF-8 are replaced.
-[[nodiscard]] std::string sigmf_text(const sigmf_document &);
+[[nodiscard]] std::string sigmf_text(const sigmf_document&);
 
 } // namespace tonewalk
