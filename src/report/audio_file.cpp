@@ -41,12 +41,23 @@ int subtype_of(audio_sample sample) {
     return 0;
 }
 
+int bytes_of(audio_sample sample) {
+    return sample == audio_sample::pcm16 ? 2 : sample == audio_sample::pcm24 ? 3 : 4;
+}
+
+/// RF64 only where needed: it implies the extensible form of the format chunk.
+bool fits_plain_wav(const audio_file::config& wanted) {
+    constexpr std::int64_t most_bytes = 0xFFFF'0000;
+    return wanted.samples && *wanted.samples <= most_bytes / bytes_of(wanted.sample);
+}
+
 SF_INFO info_of(const audio_file::config& wanted, audio_container container) {
     SF_INFO info{};
     info.samplerate = static_cast<int>(wanted.rate_hz);
     info.channels = 1;
-    info.format = subtype_of(wanted.sample) |
-                  (container == audio_container::wav ? SF_FORMAT_RF64 : SF_FORMAT_FLAC);
+    info.format = subtype_of(wanted.sample) | (container == audio_container::flac ? SF_FORMAT_FLAC
+                                               : fits_plain_wav(wanted)           ? SF_FORMAT_WAV
+                                                                                  : SF_FORMAT_RF64);
     return info;
 }
 
@@ -104,6 +115,21 @@ struct descriptor_io {
         }
         return done;
     }
+    /// Libsndfile 1.2 keeps RF64's peak chunk, with its time stamp, although told not to: made
+    /// into padding.
+    void blank_peak_chunk() {
+        std::array<char, 512> head;
+        const ssize_t size = ::pread(descriptor, head.data(), head.size(), 0);
+        const std::string_view text{head.data(),
+                                    static_cast<std::size_t>(std::max<ssize_t>(size, 0))};
+        const std::size_t chunk = text.find("PEAK");
+        if (!text.starts_with("R") || chunk > text.find("data"))
+            return;
+        constexpr std::array<char, 16> zeros{};
+        if (::pwrite(descriptor, "PAD ", 4, static_cast<off_t>(chunk)) != 4 ||
+            ::pwrite(descriptor, zeros.data(), zeros.size(), static_cast<off_t>(chunk + 8)) != 16)
+            failure = errno;
+    }
     static inline SF_VIRTUAL_IO functions{&length, &seek, &read, &write, &tell};
 };
 
@@ -124,7 +150,7 @@ struct audio_file::state {
     std::unique_ptr<std::FILE, close_file> detour; // only where `out` cannot seek
     descriptor_io io;
     std::unique_ptr<SNDFILE, close_sound> sound;
-    std::int64_t clipped = 0;
+    std::int64_t clipped = 0, added = 0;
 
     explicit state(const config& given) : wanted{given}, out{given.target, given.force} {
         io.descriptor = out.descriptor();
@@ -184,6 +210,7 @@ struct audio_file::state {
 
     void finish() {
         const int failure = sf_close(sound.release());
+        io.blank_peak_chunk();
         if (failure != 0 || io.failure != 0)
             fail(sf_error_number(failure));
         if (detour)
@@ -220,6 +247,8 @@ audio_file& audio_file::operator=(audio_file&&) noexcept = default;
 audio_file::~audio_file() = default;
 
 void audio_file::add(std::span<const float> samples) {
+    state_->added += static_cast<std::int64_t>(samples.size());
+    assert(!state_->wanted.samples || state_->added <= *state_->wanted.samples);
     while (!samples.empty()) {
         const std::size_t count = std::min(samples.size(), block_samples);
         state_->add_block(samples.first(count));

@@ -39,8 +39,8 @@ std::int64_t write_audio(const audio_file::config& wanted, std::span<const float
     return file.clipped_samples();
 }
 
-unsigned little_endian(const std::string& bytes, std::size_t at, std::size_t count) {
-    unsigned value = 0;
+std::uint64_t little_endian(const std::string& bytes, std::size_t at, std::size_t count) {
+    std::uint64_t value = 0;
     for (std::size_t i = count; i-- > 0;)
         value = (value << 8) | static_cast<unsigned char>(bytes[at + i]);
     return value;
@@ -94,11 +94,32 @@ TEST(AudioFile, ScalesByTwoToTheBitsAndClampsAndCountsWhatIsBeyond) {
 TEST(AudioFile, KeepsFloatsAsTheyAreWithoutAPeakChunk) {
     const test::temporary_folder folder;
     const std::vector<float> samples{0.25F, -1.75F};
-    EXPECT_EQ(write_audio({.target = folder / "a.wav", .sample = audio_sample::float32}, samples),
-              0);
-    const std::string bytes = test::read_file(folder / "a.wav");
-    EXPECT_EQ(bytes.find("PEAK"), bytes.npos);
-    EXPECT_EQ(std::bit_cast<float>(little_endian(bytes, bytes.size() - 4, 4)), -1.75F);
+    for (const auto length : {std::optional<std::int64_t>{2}, std::optional<std::int64_t>{}}) {
+        const audio_file::config wanted{.target = folder / "a.wav",
+                                        .sample = audio_sample::float32,
+                                        .force = true,
+                                        .samples = length};
+        EXPECT_EQ(write_audio(wanted, samples), 0);
+        const std::string bytes = test::read_file(folder / "a.wav");
+        EXPECT_EQ(bytes.find("PEAK"), bytes.npos);
+        EXPECT_EQ(std::bit_cast<float>(
+                      static_cast<std::uint32_t>(little_endian(bytes, bytes.size() - 4, 4))),
+                  -1.75F);
+    }
+}
+
+// Format tags: 1 is PCM, 0xFFFE the extensible form (WAVEFORMATEX; from memory).
+TEST(AudioFile, IsPlainWavWhereTheLengthIsKnownToFit) {
+    const test::temporary_folder folder;
+    const auto format_tag = [&](std::optional<std::int64_t> length) {
+        write_audio({.target = folder / "a.wav", .force = true, .samples = length}, tone(100));
+        const std::string bytes = test::read_file(folder / "a.wav");
+        EXPECT_EQ(bytes.substr(0, 4), "RIFF");
+        return little_endian(bytes, bytes.find("fmt ") + 8, 2);
+    };
+    EXPECT_EQ(format_tag(100), 1U);
+    EXPECT_EQ(format_tag(3'000'000'000), 0xFFFEU); // RF64 taken back
+    EXPECT_EQ(format_tag(std::nullopt), 0xFFFEU);
 }
 
 TEST(AudioFile, GivesEqualBytesHoweverTheAudioIsCut) {
@@ -176,7 +197,10 @@ TEST(AudioFile, ReachesAFifoWithItsHeaderComplete) {
 // Outside truth: Python's wave module reads what was written.
 TEST(OutsideAudioFile, IsReadByPythonsWaveModule) {
     const test::temporary_folder folder;
-    write_audio({.target = folder / "a.wav", .rate_hz = 44100.0, .sample = audio_sample::pcm24},
+    write_audio({.target = folder / "a.wav",
+                 .rate_hz = 44100.0,
+                 .sample = audio_sample::pcm24,
+                 .samples = 5000},
                 tone(5000));
     const std::string program = fmt::format(
         "import wave, math; w = wave.open('{}'); "
@@ -205,9 +229,31 @@ TEST(OutsideAudioFile, IsReadBySox) {
             << read.output;
         EXPECT_NE(read.output.find("RMS     amplitude:     0.353"), read.output.npos)
             << read.output;
-        EXPECT_NE(read.output.find("Rough   frequency:         1000"), read.output.npos)
-            << read.output;
+        const std::string label = "Rough   frequency:";
+        const std::size_t frequency = read.output.find(label);
+        ASSERT_NE(frequency, read.output.npos) << read.output;
+        EXPECT_NEAR(std::stod(read.output.substr(frequency + label.size())), 1000.0, 2.0);
     }
+}
+// EBU Tech 3306: RF64 with its sizes of 64 bits in a ds64 chunk; from memory.
+TEST(SlowAudioFile, PassesFourGibibytesAsRf64) {
+    const test::temporary_folder folder;
+    if (fs::space(folder.path()).available < 6'000'000'000)
+        GTEST_SKIP() << "no room for a file of 4.3 GB";
+    constexpr std::int64_t seconds = 22'400;
+    const auto second = tone(48'000);
+    audio_file file{{.target = folder / "a.wav", .sample = audio_sample::float32}};
+    for (std::int64_t done = 0; done < seconds; ++done)
+        file.add(second);
+    file.finish();
+    std::ifstream written{folder / "a.wav", std::ios::binary};
+    std::string head(256, '\0');
+    written.read(head.data(), 256);
+    EXPECT_EQ(head.substr(0, 4), "RF64");
+    EXPECT_EQ(head.find("PEAK"), head.npos);
+    const std::size_t sizes = head.find("ds64") + 8; // file, data and sample counts of 8 bytes each
+    EXPECT_EQ(little_endian(head, sizes + 8, 8), static_cast<std::uint64_t>(4 * 48'000 * seconds));
+    EXPECT_EQ(fs::file_size(folder / "a.wav"), little_endian(head, sizes, 8) + 8);
 }
 
 } // namespace

@@ -4,6 +4,7 @@
 #include <cstdint>
 #include <filesystem>
 #include <memory>
+#include <optional>
 #include <span>
 #include <string_view>
 
@@ -31,6 +32,9 @@ public:
         double rate_hz = 48000.0; ///< a whole number, 1 to 655350
         audio_sample sample = audio_sample::pcm16;
         bool force = false; ///< replace a file that is there
+        /// How many will come at most: small ones make plain WAV, which everything reads. Not
+        /// known: the extensible form, which a few old readers refuse.
+        std::optional<std::int64_t> samples = std::nullopt;
     };
     explicit audio_file(const config&);
     audio_file(audio_file&&) noexcept;
