@@ -82,7 +82,7 @@ archive_member member_of(const input_file& file, ::archive* reader, ::archive_en
     member.name = name_of(entry);
     member.range = {::archive_filter_bytes(reader, 0), ::archive_entry_size(entry)};
     member.refusal = refusal_of(entry, member.name);
-    if (member.range.size > file.size() - member.range.offset)
+    if (member.refusal.empty() && member.range.size > file.size() - member.range.offset)
         throw error{
             fault::malformed,
             fmt::format("the archive ends before its member {} does", in_quotes(member.name)),
