@@ -4,6 +4,7 @@
 #include <algorithm>
 #include <cassert>
 #include <cmath>
+#include <utility>
 
 #include "tonewalk/base/decibel.hpp"
 #include "tonewalk/base/error.hpp"
@@ -59,12 +60,17 @@ std::int64_t limit(std::span<float> audio, bool clamp) noexcept {
 
 carrier_curve::carrier_curve(std::span<const double> time_s, std::span<const double> amplitude) {
     assert(time_s.size() == amplitude.size());
+    std::vector<double> measured;
     for (std::size_t i = 0; i < time_s.size(); ++i) {
         if (std::isfinite(amplitude[i]) && amplitude[i] > 0.0) {
+            measured.push_back(amplitude[i]);
+        }
+        if (!measured.empty()) {
             time_s_.push_back(time_s[i]);
-            amplitude_.push_back(amplitude[i]);
+            amplitude_.push_back(measured.back());
         }
     }
+    median_ = tonewalk::median(std::move(measured));
 }
 
 double carrier_curve::at(double time_s) const noexcept {
@@ -81,10 +87,6 @@ double carrier_curve::at(double time_s) const noexcept {
     const auto i = static_cast<std::size_t>(after);
     const double share = (time_s - time_s_[i - 1]) / (time_s_[i] - time_s_[i - 1]);
     return amplitude_[i - 1] + share * (amplitude_[i] - amplitude_[i - 1]);
-}
-
-double carrier_curve::median() const {
-    return tonewalk::median(amplitude_);
 }
 
 sample_index audio_length(double span_s, double audio_rate_hz) noexcept {

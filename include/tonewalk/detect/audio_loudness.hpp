@@ -24,10 +24,12 @@ public:
     carrier_curve(std::span<const double> time_s, std::span<const double> amplitude);
     [[nodiscard]] bool empty() const noexcept { return time_s_.empty(); }
     [[nodiscard]] double at(double time_s) const noexcept; ///< NaN when empty
-    [[nodiscard]] double median() const; ///< of the records that gave one; NaN when empty
+    /// Of the records that gave one; NaN when empty.
+    [[nodiscard]] double median() const noexcept { return median_; }
 
 private:
     std::vector<double> time_s_, amplitude_;
+    double median_ = not_measured;
 };
 
 enum class loudness {
@@ -37,7 +39,8 @@ enum class loudness {
 
 struct audio_options {
     loudness mode = loudness::field;
-    std::optional<double> gain_db; ///< field: --gain; empty: the highest sample stands at -1 dBFS
+    std::optional<double> gain_db =
+        {}; ///< field: --gain; empty: the highest sample stands at -1 dBFS
     double audio_rate_hz = 48000.0;
     sample_index audio_samples =
         0;                ///< exact length, audio_length(): the spool is cut or filled with silence

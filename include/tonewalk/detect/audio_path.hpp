@@ -21,11 +21,11 @@ struct audio_band {
     double low_hz = 0.0, high_hz = 0.0, stop_hz = 0.0;
 };
 struct audio_band_request {
-    double rate_hz = 0.0;           ///< of the baseband samples
-    double width_hz = 0.0;          ///< flat width of the channel
-    double audio_rate_hz = 48000.0; ///< 8000 to 192000
-    std::optional<double> low_hz;   ///< --band; empty: 50 Hz
-    std::optional<double> high_hz;  ///< --band; empty: half the width, or what the rates hold
+    double rate_hz = 0.0;               ///< of the baseband samples
+    double width_hz = 0.0;              ///< flat width of the channel
+    double audio_rate_hz = 48000.0;     ///< 8000 to 192000
+    std::optional<double> low_hz = {};  ///< --band; empty: 50 Hz
+    std::optional<double> high_hz = {}; ///< --band; empty: half the width, or what the rates hold
 };
 /// Throws error{bad_request} naming --band or --audio-rate when they cannot be had.
 [[nodiscard]] audio_band choose_audio_band(const audio_band_request&);
