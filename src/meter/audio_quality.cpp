@@ -23,48 +23,108 @@ std::size_t segment_size(const audio_quality_meter::config& c) {
     return std::min(wanted, there) / 2 * 2;
 }
 
-/// Mean-square spectrum of the averaged segments, and the band in it.
+/// Bins [first, last].
+struct bin_range {
+    std::size_t first = 0, last = 0;
+};
+
+/// Mean-square spectrum of the averaged segments, one-sided: the bins of a line add up to its mean
+/// square.
 struct line_spectrum {
-    std::vector<double> power; // one-sided: the bins of a line add up to its mean square
-    double bin_hz;
-    std::size_t low, high; // bins of the band, both inside
+    std::vector<double> power;
+    double bin_hz = 0.0;
+    bin_range band;
 
     [[nodiscard]] std::size_t bin(double hz) const noexcept {
-        return static_cast<std::size_t>(std::llround(hz / bin_hz));
+        return static_cast<std::size_t>(std::llround(std::max(0.0, hz) / bin_hz));
     }
-    /// Bins [first, last] of a line at `hz`, inside the spectrum.
-    struct range {
-        std::size_t first, last;
-    };
-    [[nodiscard]] range around(double hz, std::size_t half) const noexcept {
+    [[nodiscard]] bin_range around(double hz, std::size_t half) const noexcept {
         const std::size_t centre = bin(hz);
         return {centre - std::min(centre, half), std::min(centre + half, power.size() - 1)};
     }
-    [[nodiscard]] double sum(range r) const noexcept {
-        return std::accumulate(power.begin() + static_cast<std::ptrdiff_t>(r.first),
-                               power.begin() + static_cast<std::ptrdiff_t>(r.last + 1), 0.0);
+    [[nodiscard]] std::span<const double> bins(bin_range r) const noexcept {
+        return std::span{power}.subspan(r.first, r.last + 1 - r.first);
     }
-    /// Half the width of a line, in bins.
-    [[nodiscard]] std::size_t half_width(double tone_hz) const noexcept {
-        const auto wide = std::max<std::size_t>(5, bin(12.0));
-        const auto room = static_cast<std::size_t>(0.45 * tone_hz / bin_hz);
-        return std::max<std::size_t>(4, std::min(wide, room)); // 4: the window's own main lobe
-    }
-    /// Mean power of a bin that holds no line: those above 4 times the median are left out.
-    [[nodiscard]] double floor() const {
-        const std::vector<double> band{power.begin() + static_cast<std::ptrdiff_t>(low),
-                                       power.begin() + static_cast<std::ptrdiff_t>(high + 1)};
-        const double limit = 4.0 * median(band);
-        double total = 0.0, count = 0.0;
-        for (const double p : band) {
-            if (p <= limit) {
-                total += p;
-                count += 1.0;
-            }
-        }
-        return total / count;
+    [[nodiscard]] double sum(bin_range r) const noexcept {
+        const auto part = bins(r);
+        return std::accumulate(part.begin(), part.end(), 0.0);
     }
 };
+
+/// Half the width of a tone's lines, in bins.
+std::size_t half_width(const line_spectrum& s, double tone_hz) noexcept {
+    constexpr std::size_t main_lobe = 4; // of the window, to either side
+    const std::size_t wide = std::max(main_lobe + 1, s.bin(12.0));
+    const auto room = static_cast<std::size_t>(0.45 * tone_hz / s.bin_hz);
+    return std::max(main_lobe, std::min(wide, room));
+}
+
+/// Mean power of a bin in the band that holds no line: those above 4 times the median are left out.
+double floor_of(const line_spectrum& s) {
+    const auto band = s.bins(s.band);
+    const double limit = 4.0 * median({band.begin(), band.end()});
+    double total = 0.0, count = 0.0;
+    for (const double p : band) {
+        if (p <= limit) {
+            total += p;
+            count += 1.0;
+        }
+    }
+    return total / count;
+}
+
+/// The highest bin in the band, near `tone_hz` where that is known.
+std::size_t highest_bin(const line_spectrum& s, double tone_hz) noexcept {
+    bin_range where = s.band;
+    if (std::isfinite(tone_hz)) {
+        const double slack_hz = std::max({2.0, 0.02 * tone_hz, 2.0 * s.bin_hz});
+        where.first = std::clamp(s.bin(tone_hz - slack_hz), s.band.first, s.band.last);
+        where.last = std::clamp(s.bin(tone_hz + slack_hz), s.band.first, s.band.last);
+    }
+    const auto part = s.bins(where);
+    const auto highest = std::max_element(part.begin(), part.end()) - part.begin();
+    return where.first + static_cast<std::size_t>(highest);
+}
+
+/// Power of all in the band but the tone and its harmonics, as if it went on beneath them.
+double noise_power(const line_spectrum& s, double tone_hz, std::size_t half) {
+    std::vector<bool> line(s.power.size());
+    for (unsigned order = 1; order <= last_harmonic; ++order) {
+        if (s.bin(order * tone_hz) < line.size()) {
+            const bin_range r = s.around(order * tone_hz, half);
+            std::fill_n(line.begin() + static_cast<std::ptrdiff_t>(r.first), r.last + 1 - r.first,
+                        true);
+        }
+    }
+    double total = 0.0, count = 0.0;
+    for (std::size_t k = s.band.first; k <= s.band.last; ++k) {
+        total += line[k] ? 0.0 : s.power[k];
+        count += line[k] ? 0.0 : 1.0;
+    }
+    return total / count * static_cast<double>(s.band.last + 1 - s.band.first);
+}
+
+/// Level, noise and distortion of the tone at `tone_hz`; nothing where it does not stand out.
+audio_quality quality_of(const line_spectrum& s, double tone_hz, double high_hz) {
+    const std::size_t half = half_width(s, tone_hz);
+    const double floor = floor_of(s) * static_cast<double>(2 * half + 1);
+    const double tone_power = s.sum(s.around(tone_hz, half)) - floor;
+    audio_quality q;
+    if (!(tone_power > detection_ratio * floor)) {
+        return q;
+    }
+    q.frequency_hz = tone_hz;
+    q.level_dbfs = decibel::from_power_ratio(2.0 * tone_power).db();
+    q.snr_db = decibel::from_power_ratio(tone_power / noise_power(s, tone_hz, half)).db();
+    if (2.0 * tone_hz <= high_hz) {
+        double harmonics = 0.0;
+        for (unsigned order = 2; order <= last_harmonic && order * tone_hz <= high_hz; ++order) {
+            harmonics += s.sum(s.around(order * tone_hz, half)) - floor;
+        }
+        q.thd_percent = 100.0 * std::sqrt(std::max(0.0, harmonics) / tone_power);
+    }
+    return q;
+}
 
 } // namespace
 
@@ -143,67 +203,22 @@ double audio_quality_meter::frequency_at(std::size_t peak) const {
 }
 
 audio_quality audio_quality_meter::result() const {
-    audio_quality q;
-    const auto top = static_cast<std::size_t>(config_.high_hz / bin_hz());
-    const auto bottom = static_cast<std::size_t>(std::ceil(config_.low_hz / bin_hz()));
-    if (segments_ == 0 || top >= power_.size() || top < bottom + 16) {
-        return q;
+    const auto first = static_cast<std::size_t>(std::ceil(config_.low_hz / bin_hz()));
+    const auto last = static_cast<std::size_t>(config_.high_hz / bin_hz());
+    constexpr std::size_t fewest_bins = 16; // fewer show no line beside its noise
+    if (segments_ == 0 || last >= power_.size() || last < first + fewest_bins) {
+        return {};
     }
-    line_spectrum s{power_, bin_hz(), bottom, top};
     double window_power = 0.0;
     for (const double w : window_.values()) {
         window_power += w * w;
     }
-    const double scale =
-        2.0 / (static_cast<double>(window_.size()) * window_power * static_cast<double>(segments_));
+    line_spectrum s{power_, bin_hz(), {first, last}};
+    const double squares = static_cast<double>(window_.size() * segments_) * window_power;
     for (double& p : s.power) {
-        p *= scale;
+        p *= 2.0 / squares;
     }
-
-    std::size_t from = bottom, until = top;
-    if (std::isfinite(config_.tone_hz)) {
-        const double slack_hz = std::max({2.0, 0.02 * config_.tone_hz, 2.0 * bin_hz()});
-        from = std::clamp(s.bin(std::max(0.0, config_.tone_hz - slack_hz)), bottom, top);
-        until = std::clamp(s.bin(config_.tone_hz + slack_hz), bottom, top);
-    }
-    const auto at = [&](std::size_t k) { return s.power.begin() + static_cast<std::ptrdiff_t>(k); };
-    const auto peak =
-        static_cast<std::size_t>(std::max_element(at(from), at(until + 1)) - s.power.begin());
-    const double tone_hz = frequency_at(peak);
-    const std::size_t half = s.half_width(tone_hz);
-    const double line_floor = s.floor() * static_cast<double>(2 * half + 1);
-    const double tone_power = s.sum(s.around(tone_hz, half)) - line_floor;
-    if (!(tone_power > detection_ratio * line_floor)) {
-        return q;
-    }
-
-    double harmonic_power = 0.0;
-    bool any = false;
-    std::vector<bool> noise(s.power.size(), true);
-    for (unsigned order = 1; order <= last_harmonic && order * tone_hz <= config_.high_hz;
-         ++order) {
-        const auto line = s.around(order * tone_hz, half);
-        std::fill(noise.begin() + static_cast<std::ptrdiff_t>(line.first),
-                  noise.begin() + static_cast<std::ptrdiff_t>(line.last + 1), false);
-        if (order > 1) {
-            harmonic_power += s.sum(line) - line_floor;
-            any = true;
-        }
-    }
-    double noise_sum = 0.0, noise_bins = 0.0;
-    for (std::size_t k = bottom; k <= top; ++k) {
-        if (noise[k]) {
-            noise_sum += s.power[k];
-            noise_bins += 1.0;
-        }
-    }
-    q.frequency_hz = tone_hz;
-    q.level_dbfs = decibel::from_power_ratio(2.0 * tone_power).db();
-    const double noise_power = noise_sum / noise_bins * static_cast<double>(top - bottom + 1);
-    q.snr_db = decibel::from_power_ratio(tone_power / noise_power).db();
-    q.thd_percent =
-        any ? 100.0 * std::sqrt(std::max(0.0, harmonic_power) / tone_power) : not_measured;
-    return q;
+    return quality_of(s, frequency_at(highest_bin(s, config_.tone_hz)), config_.high_hz);
 }
 
 } // namespace tonewalk
