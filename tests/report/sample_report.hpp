@@ -55,7 +55,7 @@ inline sheet sample_result() {
     summary.add("min_dbfs", "dBFS", interval_estimate{nothing, nothing, -60.0, nothing});
     summary.add("p10_dbfs", "dBFS", interval_estimate{nothing, nothing, -60.0, nothing});
     summary.add("p90_dbfs", "dBFS", cell{-4.0}).add("swing_db", "dB", cell{59.7});
-    summary.add("swing_at_least", "", cell{true});
+    summary.add("swing_at_least", "dB", cell{not_measured});
 
     sheet result;
     result.add("interval_s", "s", cell{0.1}).add("window_s", "s", cell{0.2});
