@@ -1,0 +1,13 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include "tonewalk/meter/level_log.hpp"
+
+namespace tonewalk {
+
+/// Doubts that the finished log itself raises: weak-carrier, weak-tone, floor-limited,
+/// segments-skipped, envelope-suppressed, depth-varies, gain-step, agc-suspected. Thresholds in
+/// docs/results.md.
+void add_level_notes(level_log&, quantity);
+
+} // namespace tonewalk

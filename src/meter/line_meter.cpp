@@ -1,0 +1,415 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "tonewalk/meter/line_meter.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <deque>
+#include <utility>
+
+#include <fmt/core.h>
+
+#include "frequency_curve.hpp"
+#include "level_intervals.hpp"
+#include "line_moments.hpp"
+#include "noise_lines.hpp"
+#include "strip_picture.hpp"
+#include "tonewalk/base/error.hpp"
+#include "tonewalk/base/quantity.hpp"
+
+namespace tonewalk {
+namespace {
+
+constexpr double strong_ratio = 100.0; // 20 dB line SNR: knows its frequency, can be split
+constexpr double least_noise_lines = 16.0;
+constexpr double neighbour_reach_s = 10.0;
+constexpr double most_offset_hz = 2.0;  // of the curve from what a record was correlated at
+constexpr double least_tone_bins = 3.0; // between carrier and tone lines
+constexpr double least_noise = 1e-30;   // full scale^2; below any float sample's own rounding
+
+/// Amplitudes of carrier, upper and lower line.
+struct three_lines {
+    cf64 carrier, upper, lower;
+};
+
+/// Takes out what a Hann window leaks from each of three evenly spaced lines into the others.
+three_lines without_leakage(const three_lines& m, double spacing_bins) {
+    const double near = hann_response(spacing_bins), far = hann_response(2.0 * spacing_bins);
+    const cf64 sum = (m.upper + m.lower - 2.0 * near * m.carrier) / (1.0 + far - 2.0 * near * near);
+    const cf64 difference = (m.upper - m.lower) / (1.0 - far);
+    return {m.carrier - near * sum, 0.5 * (sum + difference), 0.5 * (sum - difference)};
+}
+
+/// A record whose frequency is not final yet: its lines' moments and its noise.
+struct pending_record {
+    std::size_t index = 0; // in the log
+    std::uint32_t stretch = 0;
+    double time_s = 0.0;
+    line_moments carrier, upper, lower;
+    noise_reading noise;
+};
+
+std::vector<double> hann_weights(std::size_t size) {
+    const window hann = hann_window(size);
+    std::vector<double> w(hann.values().begin(), hann.values().end());
+    for (double& each : w) {
+        each /= hann.coherent_gain() * static_cast<double>(size);
+    }
+    return w;
+}
+
+} // namespace
+
+struct line_meter::state {
+    explicit state(const config& c)
+        : set{c}, samples{static_cast<std::size_t>(c.grid.window_samples())},
+          weights{hann_weights(samples)}, window_s{static_cast<double>(samples) / c.grid.rate_hz},
+          order{moment_order(window_s, most_offset_hz)}, noise{{c.grid.rate_hz, samples, c.width_hz,
+                                                                c.response}},
+          curve{0.0}, picture{c.width_hz, c.carrier_offset_hz} {
+        log.every_s = c.grid.every_s;
+        log.window_s = window_s;
+        log.width_hz = c.width_hz;
+        log.start_utc = c.start_utc;
+        log.tone_hz = c.tone_hz.value_or(not_measured);
+        check_window();
+    }
+    void check_window() const;
+    void measure_complete();
+    void measure(sample_index first);
+    void null_record(double time_s, std::uint32_t flags);
+    [[nodiscard]] double own_frequency(const line_moments&) const;
+    [[nodiscard]] three_lines lines_at(const pending_record&, double carrier_hz) const;
+    void settle(bool stretch_over);
+    [[nodiscard]] noise_reading noise_for(const pending_record&) const;
+    void settle(const pending_record&);
+    void refine_tone(const pending_record&, double carrier_hz, double weight);
+    void complete();
+    [[nodiscard]] bool touched(sample_index first) const noexcept;
+    [[nodiscard]] double tone() const noexcept { return set.tone_hz.value_or(0.0); }
+
+    config set;
+    std::size_t samples;         // of a record
+    std::vector<double> weights; // Hann, sum 1
+    double window_s;
+    std::size_t order;
+    noise_lines noise;
+    frequency_curve curve;
+    strip_picture picture;
+    level_intervals intervals;
+    level_log log;
+
+    baseband_stretch stretch;
+    std::vector<cf32> history; // of the stretch, from history_first on
+    sample_index history_first = 0;
+    sample_index received = 0; // samples of the stretch so far
+    sample_index next = 0;     // record of the stretch
+    std::vector<sample_range> non_finite;
+
+    std::deque<pending_record> pending;
+    std::deque<pending_record> settled;         // noise readings of the last 10 s
+    double tone_weight = 0.0, tone_shift = 0.0; // refinement over all records
+    double offset_weight = 0.0, offset_sum = 0.0;
+};
+
+line_meter::line_meter(const config& c) : state_{std::make_unique<state>(c)} {}
+line_meter::~line_meter() = default;
+
+void line_meter::state::check_window() const {
+    const std::string where = fmt::format("--window {:g}s", set.grid.window_s);
+    if (set.tone_hz && *set.tone_hz * window_s < least_tone_bins) {
+        throw error{fault::malformed,
+                    fmt::format("is too short to part the tone of {} from the carrier",
+                                format_hz(*set.tone_hz, 5)),
+                    where, fmt::format("give --window {:.3g}s or longer", 4.0 / *set.tone_hz)};
+    }
+    std::vector<fitted_line> lines{{0.0, {}}};
+    if (set.tone_hz) {
+        lines.push_back({*set.tone_hz, {}});
+        lines.push_back({-*set.tone_hz, {}});
+    }
+    if (noise.usable(lines) == 0) {
+        throw error{fault::malformed, "leaves no lines from which the noise could be told", where,
+                    fmt::format("give --window {:.3g}s or longer, or a larger --width",
+                                40.0 / set.width_hz)};
+    }
+}
+
+void line_meter::begin_stretch(const baseband_stretch& stretch) {
+    state& s = *state_;
+    s.stretch = stretch;
+    s.history.clear();
+    s.history_first = s.received = s.next = 0;
+    s.non_finite.clear();
+}
+
+void line_meter::add(const baseband_block& block) {
+    state& s = *state_;
+    s.history.insert(s.history.end(), block.iq.begin(), block.iq.end());
+    s.received += static_cast<sample_index>(block.iq.size());
+    for (const sample_range& range : block.non_finite) {
+        if (s.non_finite.empty() || range.first > s.non_finite.back().first) {
+            s.non_finite.push_back(range);
+        } else if (range.first == s.non_finite.back().first) {
+            s.non_finite.back() = range; // it has grown
+        }
+    }
+    s.measure_complete();
+}
+
+/// Records whose samples, and the settling samples behind them, have all arrived.
+void line_meter::state::measure_complete() {
+    while (set.grid.holds(next, received)) {
+        const sample_index first = set.grid.first(next);
+        const double time_s = stretch.start_s + set.grid.centre_s(next);
+        if (!stretch.held) {
+            null_record(time_s, flag_not_held);
+        } else if (touched(first)) {
+            null_record(time_s, flag_non_finite);
+        } else {
+            measure(first);
+        }
+        ++next;
+        const sample_index needless = set.grid.first(next) - history_first;
+        if (needless > static_cast<sample_index>(4 * samples) ||
+            needless == static_cast<sample_index>(history.size())) {
+            history.erase(history.begin(),
+                          history.begin() +
+                              std::min<std::ptrdiff_t>(
+                                  needless, static_cast<std::ptrdiff_t>(history.size())));
+            history_first += needless;
+        }
+    }
+}
+
+bool line_meter::state::touched(sample_index first) const noexcept {
+    const sample_index past = first + static_cast<sample_index>(samples);
+    return std::any_of(non_finite.begin(), non_finite.end(), [first, past](const sample_range& r) {
+        return r.first < past && r.first + r.count > first;
+    });
+}
+
+void line_meter::state::null_record(double time_s, std::uint32_t flags) {
+    level_record record;
+    record.time_s = time_s;
+    record.stretch = stretch.index;
+    record.flags = flags;
+    log.records.push_back(record);
+    intervals.add_null();
+}
+
+/// Where the carrier line of the record is highest.
+double line_meter::state::own_frequency(const line_moments& carrier) const {
+    constexpr int steps = 8;
+    const double reach = std::min(most_offset_hz, 1.0 / window_s);
+    double hz = carrier.f0_hz();
+    for (int k = 0; k < steps; ++k) {
+        const line_moments::series x = carrier.derivatives(hz);
+        const double slope = 2.0 * (x.first * std::conj(x.value)).real();
+        const double bend = 2.0 * ((x.second * std::conj(x.value)).real() + std::norm(x.first));
+        if (bend >= 0.0) {
+            break;
+        }
+        hz = std::clamp(hz - slope / bend, carrier.f0_hz() - reach, carrier.f0_hz() + reach);
+    }
+    return hz;
+}
+
+three_lines line_meter::state::lines_at(const pending_record& p, double carrier_hz) const {
+    const three_lines raw{p.carrier.at(carrier_hz),
+                          set.tone_hz ? p.upper.at(carrier_hz + tone()) : cf64{},
+                          set.tone_hz ? p.lower.at(carrier_hz - tone()) : cf64{}};
+    return set.tone_hz ? without_leakage(raw, tone() * window_s) : raw;
+}
+
+void line_meter::state::measure(sample_index first) {
+    const std::span<const cf32> record = std::span<const cf32>{history}.subspan(
+        static_cast<std::size_t>(first - history_first), samples);
+    const double f0 = curve.provisional_hz(), rate = set.grid.rate_hz;
+    pending_record p;
+    p.index = log.records.size();
+    p.stretch = stretch.index;
+    p.time_s = stretch.start_s + set.grid.centre_s(next);
+    p.carrier = line_moments{record, weights, rate, f0, order};
+    if (set.tone_hz) {
+        p.upper = line_moments{record, weights, rate, f0 + tone(), order};
+        p.lower = line_moments{record, weights, rate, f0 - tone(), order};
+    }
+    const double own = own_frequency(p.carrier);
+    const three_lines found = lines_at(p, own);
+    std::vector<fitted_line> lines{{own, found.carrier}};
+    if (set.tone_hz) {
+        lines.push_back({own + tone(), found.upper});
+        lines.push_back({own - tone(), found.lower});
+    }
+    p.noise = noise.measure(record, lines);
+    picture.add(p.time_s, noise.line_powers(), noise.bin_hz(), lines);
+    const double power = std::norm(found.carrier);
+    if (p.noise.lines > 0.0 && power > strong_ratio * std::max(p.noise.mean_power, least_noise)) {
+        curve.add({p.time_s, own, power});
+    }
+    level_record entry;
+    entry.time_s = p.time_s;
+    entry.stretch = stretch.index;
+    log.records.push_back(entry);
+    intervals.add_null();
+    pending.push_back(std::move(p));
+    curve.advance(pending.back().time_s);
+    settle(false);
+}
+
+/// Finishes the records whose frequency, and whose neighbours' noise where they need it, are known.
+void line_meter::state::settle(bool stretch_over) {
+    while (!pending.empty()) {
+        const pending_record& p = pending.front();
+        const double latest_s = pending.back().time_s;
+        const bool curve_known = stretch_over || p.time_s < curve.known_until_s() ||
+                                 latest_s - p.time_s > neighbour_reach_s;
+        const bool noise_known = stretch_over || p.noise.lines >= least_noise_lines ||
+                                 pending.back().stretch != p.stretch ||
+                                 latest_s - p.time_s > neighbour_reach_s;
+        if (!curve_known || !noise_known) {
+            return;
+        }
+        settle(p);
+        settled.push_back(std::move(pending.front()));
+        pending.pop_front();
+        settled.back().carrier = settled.back().upper = settled.back().lower = line_moments{};
+        while (latest_s - settled.front().time_s > 2.0 * neighbour_reach_s) {
+            settled.pop_front();
+        }
+    }
+}
+
+/// The record's own noise; with too few lines its nearest neighbours' in the stretch join, as few
+/// as do, each a window apart from the last so that they are independent.
+noise_reading line_meter::state::noise_for(const pending_record& p) const {
+    noise_reading total{p.noise.mean_power * p.noise.lines, p.noise.lines, p.noise.independent};
+    std::vector<const pending_record*> near;
+    for (const std::deque<pending_record>* side : {&settled, &pending}) {
+        for (const pending_record& other : *side) {
+            const double apart_s = std::abs(other.time_s - p.time_s);
+            if (other.stretch == p.stretch && other.index != p.index &&
+                apart_s <= neighbour_reach_s) {
+                near.push_back(&other);
+            }
+        }
+    }
+    std::sort(near.begin(), near.end(), [&p](const pending_record* a, const pending_record* b) {
+        return std::abs(a->time_s - p.time_s) < std::abs(b->time_s - p.time_s);
+    });
+    std::vector<double> taken{p.time_s};
+    for (const pending_record* other : near) {
+        if (total.lines >= least_noise_lines) {
+            break;
+        }
+        const bool apart = std::all_of(taken.begin(), taken.end(), [&](double t) {
+            return std::abs(t - other->time_s) > 0.999 * window_s;
+        });
+        if (apart) {
+            taken.push_back(other->time_s);
+            total.mean_power += other->noise.mean_power * other->noise.lines;
+            total.lines += other->noise.lines;
+            total.independent += other->noise.independent;
+        }
+    }
+    total.mean_power = total.lines > 0.0 ? total.mean_power / total.lines : 0.0;
+    return total;
+}
+
+void line_meter::state::settle(const pending_record& p) {
+    const noise_reading floor = p.noise.lines >= least_noise_lines ? p.noise : noise_for(p);
+    const frequency_curve::value at = curve.at(p.time_s);
+    three_lines lines = lines_at(p, at.hz);
+    const auto gain = [this](double hz) { return set.response ? set.response(hz) : 1.0; };
+    lines.carrier /= gain(at.hz);
+    lines.upper /= gain(at.hz + tone());
+    lines.lower /= gain(at.hz - tone());
+
+    level_record& r = log.records[p.index];
+    const double n = std::max(floor.mean_power, least_noise);
+    const double carrier_power = std::norm(lines.carrier);
+    r.noise_power = n;
+    r.carrier_offset_hz = set.carrier_offset_hz + at.hz;
+    r.carrier = {carrier_power - n, std::sqrt(n / 2.0),
+                 carrier_power > n * carrier_detection_ratio(floor.independent)};
+    offset_weight += std::max(0.0, r.carrier.power);
+    offset_sum += std::max(0.0, r.carrier.power) * at.hz;
+
+    record_basis basis{.independent = floor.independent, .unknown_hz = at.unknown_hz};
+    if (set.tone_hz) {
+        const double sum = std::norm(lines.upper) + std::norm(lines.lower);
+        r.tone.sigma = std::sqrt(n);
+        r.tone.detected = sum > 2.0 * n * tone_detection_ratio(floor.independent);
+        basis.split = r.carrier.power > strong_ratio * n;
+        if (basis.split) {
+            const cf64 c = lines.carrier / std::abs(lines.carrier);
+            const cf64 s = lines.upper * std::conj(c) + std::conj(lines.lower) * c;
+            const cf64 q = lines.upper * std::conj(c) - std::conj(lines.lower) * c;
+            const double v = n / (2.0 * r.carrier.power);
+            const double in_phase = std::norm(s) - 2.0 * n, across = std::norm(q) - 2.0 * n;
+            r.tone.power = ((1.0 - v) * in_phase - v * across) / (1.0 - 2.0 * v);
+            basis.across_power = ((1.0 - v) * across - v * in_phase) / (1.0 - 2.0 * v);
+        } else {
+            r.tone.power = 2.0 * (sum - 2.0 * n);
+        }
+        if (basis.split && r.tone.detected) {
+            refine_tone(p, at.hz, sum / n);
+        }
+    }
+    intervals.set(p.index, basis);
+}
+
+/// How far the tone is off the opening's: where both its lines together are highest.
+void line_meter::state::refine_tone(const pending_record& p, double carrier_hz, double weight) {
+    const line_moments::series u = p.upper.derivatives(carrier_hz + tone());
+    const line_moments::series l = p.lower.derivatives(carrier_hz - tone());
+    const double slope =
+        2.0 * (u.first * std::conj(u.value)).real() - 2.0 * (l.first * std::conj(l.value)).real();
+    const double bend = 2.0 * ((u.second * std::conj(u.value)).real() + std::norm(u.first)) +
+                        2.0 * ((l.second * std::conj(l.value)).real() + std::norm(l.first));
+    if (bend < 0.0) {
+        const double reach = 0.5 / window_s;
+        tone_shift += weight * std::clamp(-slope / bend, -reach, reach);
+        tone_weight += weight;
+    }
+}
+
+void line_meter::end_stretch() {
+    // A stretch's last records may wait for the curve; their neighbours' noise is all here.
+    state_->non_finite.clear();
+}
+
+void line_meter::finish() {
+    state_->complete();
+}
+
+void line_meter::state::complete() {
+    if (!pending.empty()) {
+        curve.advance(pending.back().time_s + 20.0);
+        settle(true);
+    }
+    log.carrier_offset_hz =
+        set.carrier_offset_hz + (offset_weight > 0.0 ? offset_sum / offset_weight : 0.0);
+    const double shift_hz = tone_weight > 0.0 ? tone_shift / tone_weight : 0.0;
+    if (set.tone_hz) {
+        log.tone_hz = *set.tone_hz + shift_hz;
+    }
+    intervals.complete(
+        log, {.tone_response = hann_response(shift_hz * window_s),
+              .carrier_offset_hz = log.carrier_offset_hz,
+              .dc_amplitude = set.dc_amplitude,
+              .image_ratio = set.image_ratio,
+              .envelope_noise_bandwidth_hz = set.envelope_in_use ? set.noise_bandwidth_hz : 0.0});
+    log.strip = picture.result();
+}
+
+level_log line_meter::take_result() {
+    state& s = *state_;
+    if (s.log.records.empty()) {
+        throw error{fault::malformed, "is longer than every gapless stretch of the recording",
+                    fmt::format("--window {:g}s", s.set.grid.window_s), "give a shorter --window"};
+    }
+    return std::move(s.log);
+}
+
+} // namespace tonewalk

@@ -1,0 +1,43 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <complex>
+#include <span>
+#include <vector>
+
+#include "tonewalk/base/sample.hpp"
+
+namespace tonewalk {
+
+/// A record's Hann-windowed correlation at one frequency f0, with its moments in time, so that the
+/// correlation at f0 + delta is a short exact series: X(f0 + delta) = sum over p of
+/// (-j pi delta T)^p / p! M_p, with M_p the mean of w x (2t/T)^p e^(-j 2 pi f0 t), t from the
+/// centre. A line of amplitude a at f0 + delta gives X = a.
+class line_moments {
+public:
+    line_moments() = default;
+    /// `window` sums to 1 and is as long as `samples`.
+    line_moments(std::span<const cf32> samples, std::span<const double> window, double rate_hz,
+                 double f0_hz, std::size_t order);
+    [[nodiscard]] double f0_hz() const noexcept { return f0_hz_; }
+    [[nodiscard]] cf64 at(double hz) const noexcept;
+    /// X and its first two derivatives by frequency, per Hz.
+    struct series {
+        cf64 value, first, second;
+    };
+    [[nodiscard]] series derivatives(double hz) const noexcept;
+
+private:
+    std::vector<cf64> coefficients_; // of the series in theta = pi delta T
+    double f0_hz_ = 0.0, window_s_ = 0.0;
+};
+
+/// How many moments reach `most_offset_hz` to 1e-10 of the line.
+[[nodiscard]] std::size_t moment_order(double window_s, double most_offset_hz) noexcept;
+
+/// Amplitude of a line `bins` (delta T) off in a Hann-windowed correlation, 1 at 0.
+[[nodiscard]] double hann_response(double bins) noexcept;
+/// The largest that |hann_response| takes from `bins` on.
+[[nodiscard]] double hann_leakage_bound(double bins) noexcept;
+
+} // namespace tonewalk

@@ -1,0 +1,174 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "noise_lines.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+namespace tonewalk {
+namespace {
+
+constexpr double pi = std::numbers::pi;
+constexpr double line_guard_bins = 4.0; // half the main lobe of the window
+constexpr double mains_guard_bins = 1.0;
+constexpr double mains_highest_hz = 1000.0;
+constexpr double mains_least_window_s = 0.0999;
+constexpr double outlier_ratio = 4.0; // times the median
+constexpr std::size_t correlated_bins = 4;
+
+/// Mean of an exponential distribution cut at `outlier_ratio` medians, over its whole mean.
+double mean_after_cut() {
+    const double cut = outlier_ratio * std::numbers::ln2;
+    const double rest = std::exp(-cut);
+    return 1.0 - cut * rest / (1.0 - rest);
+}
+
+/// The largest length of small prime factors that fits: a little of the record's end may be left
+/// out.
+std::size_t fitting_size(std::size_t samples) {
+    std::size_t size = samples;
+    while (size > 1 && fast_fft_size(size) != size) {
+        --size;
+    }
+    return size;
+}
+
+double distance_to_multiple(double hz, double of_hz) {
+    const double nearest = std::round(hz / of_hz);
+    return nearest == 0.0 ? hz : std::abs(hz - nearest * of_hz);
+}
+
+} // namespace
+
+noise_lines::noise_lines(const config& c)
+    : rate_hz_{c.rate_hz}, width_hz_{c.width_hz}, record_samples_{c.record_samples},
+      fft_{fitting_size(c.record_samples)}, window_{blackman_harris_window(fft_.size())},
+      powers_(fft_.size()) {
+    const auto size = static_cast<double>(fft_.size());
+    bin_hz_ = rate_hz_ / size;
+    double squares = 0.0;
+    for (const double w : window_.values()) {
+        squares += w * w;
+    }
+    constexpr double hann_noise_bins = 1.5;
+    to_hann_power_ = hann_noise_bins / static_cast<double>(record_samples_) / squares;
+    correction_.assign(fft_.size(), 1.0);
+    for (std::size_t k = 0; k < fft_.size(); ++k) {
+        const double hz = bin_hz_ * (k < (fft_.size() + 1) / 2 ? static_cast<double>(k)
+                                                               : static_cast<double>(k) - size);
+        if (std::abs(hz) <= width_hz_ / 2.0 && c.response) {
+            const double gain = c.response(hz);
+            correction_[k] = 1.0 / (gain * gain);
+        }
+    }
+    for (std::size_t k = 0; k <= correlated_bins; ++k) {
+        correlation_.push_back(window_.power_correlation(static_cast<double>(k)));
+    }
+}
+
+bool noise_lines::is_usable(double hz, std::span<const fitted_line> lines) const noexcept {
+    if (std::abs(hz) > width_hz_ / 2.0) {
+        return false;
+    }
+    for (const fitted_line& line : lines) {
+        if (std::abs(hz - line.hz) < line_guard_bins * bin_hz_) {
+            return false;
+        }
+    }
+    const double from_carrier = std::abs(hz - lines.front().hz);
+    const double window_s = static_cast<double>(record_samples_) / rate_hz_;
+    if (window_s >= mains_least_window_s &&
+        from_carrier <= mains_highest_hz + mains_guard_bins * bin_hz_) {
+        for (const double mains_hz : {50.0, 60.0}) {
+            if (distance_to_multiple(from_carrier, mains_hz) < mains_guard_bins * bin_hz_) {
+                return false;
+            }
+        }
+    }
+    return true;
+}
+
+std::size_t noise_lines::usable(std::span<const fitted_line> lines) const {
+    const auto reach = static_cast<int>(width_hz_ / 2.0 / bin_hz_);
+    std::size_t count = 0;
+    for (int k = -reach; k <= reach; ++k) {
+        count += is_usable(k * bin_hz_, lines) ? 1U : 0U;
+    }
+    return count;
+}
+
+void noise_lines::transform(std::span<const cf32> record, std::span<const fitted_line> lines) {
+    const double centre = static_cast<double>(record_samples_) / 2.0;
+    struct oscillator {
+        cf64 value, step;
+    };
+    std::vector<oscillator> running;
+    for (const fitted_line& line : lines) {
+        const double per_sample = 2.0 * pi * line.hz / rate_hz_;
+        running.push_back(
+            {line.amplitude * std::polar(1.0, -per_sample * centre), std::polar(1.0, per_sample)});
+    }
+    const std::span<cf32> in = fft_.input();
+    for (std::size_t n = 0; n < in.size(); ++n) {
+        cf64 rest{static_cast<double>(record[n].real()), static_cast<double>(record[n].imag())};
+        for (oscillator& line : running) {
+            rest -= line.value;
+            line.value =
+                cf64{line.value.real() * line.step.real() - line.value.imag() * line.step.imag(),
+                     line.value.real() * line.step.imag() + line.value.imag() * line.step.real()};
+        }
+        const double w = window_.values()[n];
+        in[n] = {static_cast<float>(rest.real() * w), static_cast<float>(rest.imag() * w)};
+    }
+    fft_.run();
+    const std::span<const cf32> out = fft_.output();
+    for (std::size_t k = 0; k < out.size(); ++k) {
+        const double re = static_cast<double>(out[k].real()),
+                     im = static_cast<double>(out[k].imag());
+        powers_[k] = static_cast<float>((re * re + im * im) * to_hann_power_ * correction_[k]);
+    }
+}
+
+noise_reading noise_lines::average() {
+    sorted_ = kept_;
+    const auto middle = sorted_.begin() + static_cast<std::ptrdiff_t>(sorted_.size() / 2);
+    std::nth_element(sorted_.begin(), middle, sorted_.end());
+    const double limit = outlier_ratio * *middle;
+    double sum = 0.0, count = 0.0, shared = 0.0;
+    for (std::size_t a = 0; a < kept_.size(); ++a) {
+        if (kept_[a] > limit) {
+            continue;
+        }
+        sum += kept_[a];
+        count += 1.0;
+        shared += 1.0;
+        for (std::size_t b = a + 1; b < kept_.size(); ++b) {
+            const auto apart = static_cast<std::size_t>(chosen_[b] - chosen_[a]);
+            if (apart > correlated_bins) {
+                break;
+            }
+            shared += 2.0 * correlation_[apart];
+        }
+    }
+    static const double bias = mean_after_cut();
+    return {sum / count / bias, count, count * count / shared};
+}
+
+noise_reading noise_lines::measure(std::span<const cf32> record,
+                                   std::span<const fitted_line> lines) {
+    transform(record, lines);
+    chosen_.clear();
+    kept_.clear();
+    const auto size = static_cast<int>(powers_.size());
+    const auto reach = std::min(static_cast<int>(width_hz_ / 2.0 / bin_hz_), (size - 1) / 2);
+    for (int k = -reach; k <= reach; ++k) {
+        if (is_usable(k * bin_hz_, lines)) {
+            chosen_.push_back(k);
+            kept_.push_back(
+                static_cast<double>(powers_[static_cast<std::size_t>(k < 0 ? k + size : k)]));
+        }
+    }
+    return kept_.empty() ? noise_reading{} : average();
+}
+
+} // namespace tonewalk
