@@ -75,20 +75,19 @@ void read_plain_chunk(const std::byte* frames, chunk_values<value_of<Stored>>& v
     }
 }
 
-void note_non_finite(std::vector<sample_range>& ranges, sample_index index, std::size_t cell) {
-    if (!ranges.empty()) {
-        sample_range& last = ranges.back();
-        if (index - (last.first + last.count) < static_cast<sample_index>(cell)) {
-            last.count = index + 1 - last.first;
-            return;
-        }
-    }
-    ranges.push_back({index, 1});
+// One range a cell, from the first such sample in it to the last.
+void note_non_finite(raw_counts& counts, sample_index index, sample_index cell_first) {
+    ++counts.zeroed;
+    std::vector<sample_range>& ranges = counts.non_finite;
+    if (ranges.empty() || ranges.back().first < cell_first)
+        ranges.push_back({index, 1});
+    else
+        ranges.back().count = index + 1 - ranges.back().first;
 }
 
 // Zeroes samples that single precision cannot hold, and says where they were.
 template <class Value>
-void drop_non_finite(chunk_values<Value>& values, sample_index first, std::size_t cell,
+void drop_non_finite(chunk_values<Value>& values, sample_index first, sample_index cell_first,
                      raw_counts* counts) {
     if constexpr (std::is_floating_point_v<Value>) {
         float poison = 0.0F;
@@ -102,7 +101,7 @@ void drop_non_finite(chunk_values<Value>& values, sample_index first, std::size_
                 continue;
             values.i()[n] = values.q()[n] = Value{0};
             if (counts)
-                note_non_finite(counts->non_finite, first + static_cast<sample_index>(n), cell);
+                note_non_finite(*counts, first + static_cast<sample_index>(n), cell_first);
         }
     }
 }
@@ -236,7 +235,7 @@ struct conversion {
 // One cell, or all there is when nothing is counted.
 template <class Stored>
 void convert_cell(const conversion& how, const std::byte* frames, std::span<cf32> out,
-                  sample_index first, std::size_t cell, raw_counts* counts) noexcept {
+                  sample_index first, raw_counts* counts) noexcept {
     const bool plain = how.where.is_complex && !how.where.reversed &&
                        how.where.stride == 2 * sizeof(Stored) && how.where.i_offset == 0;
     const double scale = (how.where.is_complex ? 1.0 : 2.0) / full_scale<Stored>();
@@ -249,7 +248,7 @@ void convert_cell(const conversion& how, const std::byte* frames, std::span<cf32
             read_plain_chunk<Stored>(from, values);
         else
             read_chunk<Stored>(from, how.where, count, values);
-        drop_non_finite(values, first + static_cast<sample_index>(done), cell, counts);
+        drop_non_finite(values, first + static_cast<sample_index>(done), first, counts);
         write_chunk(values, static_cast<float>(scale), how.inverted, out.subspan(done, count));
         if (!counts)
             continue;
@@ -281,6 +280,7 @@ void rail_tally::merge(const rail_tally& other) noexcept {
 void raw_counts::clear() noexcept {
     cells.clear();
     non_finite.clear();
+    zeroed = 0;
     positive = negative = {};
 }
 
@@ -325,7 +325,7 @@ void sample_converter::run(std::span<const std::byte> frames, std::span<cf32> ou
         for (std::size_t done = 0; done < out.size(); done += cell)
             convert_cell<decltype(stored)>(how, frames.data() + done * how.where.stride,
                                            out.subspan(done, std::min(cell, out.size() - done)),
-                                           first + static_cast<sample_index>(done), cell, counts);
+                                           first + static_cast<sample_index>(done), counts);
     });
 }
 

@@ -307,7 +307,8 @@ TEST(NonFinite, SamplesAreZeroedLeftOutOfSumsAndListed) {
     EXPECT_EQ(result.counts.cells.at(0).i, 98 * 0.5);
     EXPECT_EQ(result.counts.cells.at(1).i, 100 * 0.5);
     EXPECT_EQ(result.counts.cells.at(2).qq, 99 * 0.25);
-    // 10 and 12 lie less than a cell apart and are one range; 250 is another.
+    EXPECT_EQ(result.counts.zeroed, 3U);
+    // 10 and 12 lie in one cell and are one range; 250 is another.
     ASSERT_EQ(result.counts.non_finite.size(), 2U);
     EXPECT_EQ(result.counts.non_finite[0].first, 1010);
     EXPECT_EQ(result.counts.non_finite[0].count, 3);

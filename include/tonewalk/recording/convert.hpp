@@ -11,19 +11,19 @@
 
 namespace tonewalk {
 
-/// Sums over one cell of samples, over finite samples, in full-scale units, after I and Q are exchanged and
-/// the spectrum mirrored as asked. Of real samples i is the stored r itself (not the converted 2r) and q is 0.
-/// Integers sum exactly.
+/// Sums over one cell of samples, over finite samples, in full-scale units, after I and Q are
+/// exchanged and the spectrum mirrored as asked. Of real samples i is the stored r itself (not the
+/// converted 2r) and q is 0. Integers sum exactly.
 struct cell_sums {
     double i = 0, q = 0, ii = 0, qq = 0, iq = 0; ///< sums of components and products
     double peak_power = 0;                       ///< largest |z|^2
     double peak_component = 0;                   ///< largest |i| or |q|
 };
 
-/// How often the outermost codes occur on one rail (positive, negative) of both components together.
-/// counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero. Codes: integers as
-/// stored (unsigned less 2^(bits-1), shifted to code_bits); floats by the bits of |x| above the lowest 8
-/// (steps of 2^-15 or less). Zero is on neither rail.
+/// How often the outermost codes occur on one rail (positive, negative) of both components
+/// together. counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero.
+/// Codes: integers as stored (unsigned less 2^(bits-1), shifted to code_bits); floats by the bits
+/// of |x| above the lowest 8 (steps of 2^-15 or less). Zero is on neither rail.
 struct rail_tally {
     std::int64_t outermost = -1; ///< |code|; -1: none seen
     std::array<std::uint64_t, 4> counts{};
@@ -35,27 +35,29 @@ struct rail_tally {
 struct raw_counts {
     std::vector<cell_sums> cells;
     rail_tally positive, negative;
-    std::vector<sample_range> non_finite; ///< stored index; ranges less than a cell apart are one
+    std::vector<sample_range>
+        non_finite;           ///< stored index; one a cell, from the first in it to the last
+    std::uint64_t zeroed = 0; ///< non-finite samples, exactly
     void clear() noexcept;
 };
 
-/// Turns stored frames into complex samples: the lane picked, integers scaled by 2^(bits-1) (unsigned less
-/// 2^(bits-1) first), real samples r to 2r + 0j (the analytic signal's gain), I and Q exchanged, spectrum
-/// mirrored (conjugate), non-finite samples to zero.
+/// Turns stored frames into complex samples: the lane picked, integers scaled by 2^(bits-1)
+/// (unsigned less 2^(bits-1) first), real samples r to 2r + 0j (the analytic signal's gain), I and
+/// Q exchanged, spectrum mirrored (conjugate), non-finite samples to zero.
 class sample_converter {
 public:
     explicit sample_converter(const stream_facts&);
     /// out.size() samples from frames.size()/frame_bytes >= out.size() frames.
     void convert(std::span<const std::byte> frames, std::span<cf32> out) const noexcept;
-    /// The same, filling `counts`: one cell_sums per `cell` samples (the last may be shorter); frames[0] is
-    /// stored index `first`. counts.cells and counts.non_finite have room (reserved) for one entry a cell, and
-    /// non_finite for one more; both are appended to.
+    /// The same, filling `counts`: one cell_sums per `cell` samples (the last may be shorter);
+    /// frames[0] is stored index `first`. counts.cells and counts.non_finite have room (reserved)
+    /// for one entry a cell; both are appended to.
     void convert(std::span<const std::byte> frames, std::span<cf32> out, sample_index first,
                  std::size_t cell, raw_counts& counts) const noexcept;
 
 private:
-    void run(std::span<const std::byte> frames, std::span<cf32> out, sample_index first, std::size_t cell,
-             raw_counts* counts) const noexcept;
+    void run(std::span<const std::byte> frames, std::span<cf32> out, sample_index first,
+             std::size_t cell, raw_counts* counts) const noexcept;
     sample_format format_;
     std::size_t lanes_, lane_;
     unsigned code_shift_;
