@@ -5,6 +5,7 @@
 #include <cmath>
 #include <numbers>
 
+#include "dot.hpp"
 #include "tonewalk/base/random.hpp"
 #include "tonewalk/maths/fir.hpp"
 
@@ -92,16 +93,11 @@ float audio_resampler::output_at(const fine_position& p) const noexcept {
     const auto row = std::min(static_cast<std::size_t>(place), phases_ - 1);
     const double share = place - static_cast<double>(row);
     const std::size_t row_taps = 2 * reach_ + 1;
-    const double* lower = rows_.data() + row * row_taps;
-    const double* upper = lower + row_taps;
+    const std::span<const double> rows{rows_};
     const float* in = history_.data() + (p.whole - static_cast<sample_index>(reach_) - first_);
-    double sum_lower = 0.0, sum_upper = 0.0;
-    for (std::size_t i = 0; i < row_taps; ++i) {
-        const auto sample = static_cast<double>(in[i]);
-        sum_lower += lower[i] * sample;
-        sum_upper += upper[i] * sample;
-    }
-    return static_cast<float>(sum_lower + share * (sum_upper - sum_lower));
+    const double lower = dot(rows.subspan(row * row_taps, row_taps), in);
+    const double upper = dot(rows.subspan((row + 1) * row_taps, row_taps), in);
+    return static_cast<float>(lower + share * (upper - lower));
 }
 
 } // namespace tonewalk

@@ -2,8 +2,9 @@
 #include "tonewalk/detect/fir_stage.hpp"
 
 #include <algorithm>
-#include <array>
 #include <cassert>
+
+#include "dot.hpp"
 
 namespace tonewalk {
 namespace {
@@ -16,37 +17,6 @@ sample_index mirrored(sample_index index, sample_index size) noexcept {
     const sample_index period = 2 * (size - 1);
     const sample_index within = ((index % period) + period) % period;
     return std::min(within, period - within);
-}
-
-// Four sums, always in the same order: the compiler need not reorder anything to be quick.
-float dot(std::span<const double> taps, const float* in) noexcept {
-    std::array<double, 4> sums{};
-    std::size_t i = 0;
-    for (; i + 4 <= taps.size(); i += 4) {
-        for (std::size_t lane = 0; lane < 4; ++lane) {
-            sums[lane] += taps[i + lane] * static_cast<double>(in[i + lane]);
-        }
-    }
-    for (; i < taps.size(); ++i) {
-        sums[0] += taps[i] * static_cast<double>(in[i]);
-    }
-    return static_cast<float>((sums[0] + sums[1]) + (sums[2] + sums[3]));
-}
-
-cf32 dot(std::span<const double> taps, const cf32* in) noexcept {
-    std::array<double, 2> real{}, imag{};
-    std::size_t i = 0;
-    for (; i + 2 <= taps.size(); i += 2) {
-        for (std::size_t lane = 0; lane < 2; ++lane) {
-            real[lane] += taps[i + lane] * static_cast<double>(in[i + lane].real());
-            imag[lane] += taps[i + lane] * static_cast<double>(in[i + lane].imag());
-        }
-    }
-    for (; i < taps.size(); ++i) {
-        real[0] += taps[i] * static_cast<double>(in[i].real());
-        imag[0] += taps[i] * static_cast<double>(in[i].imag());
-    }
-    return {static_cast<float>(real[0] + real[1]), static_cast<float>(imag[0] + imag[1])};
 }
 
 } // namespace
@@ -131,7 +101,7 @@ void fir_stage<Sample>::produce(std::vector<Sample>& out) {
         const sample_index centre = outputs_ * down / up;
         const auto phase = static_cast<std::size_t>(outputs_ * down - centre * up);
         const std::span row{rows_.data() + phase * row_taps, row_taps};
-        out.push_back(dot(row, history_.data() + (centre - reach - first_)));
+        out.push_back(static_cast<Sample>(dot(row, history_.data() + (centre - reach - first_))));
         ++outputs_;
     }
     forget();
