@@ -98,6 +98,10 @@ private:
 };
 temporary_table temporaries;
 
+fs::path folder_of(const fs::path& target) {
+    return target.has_parent_path() ? target.parent_path() : fs::path{"."};
+}
+
 /// Where a forced write through a symbolic link lands.
 fs::path behind_links(const fs::path& target) {
     std::error_code failure;
@@ -113,14 +117,18 @@ fs::path name_beside(const fs::path& target) {
     return target.parent_path() / ("." + name + tail);
 }
 
+/// What cannot be looked at is left for open() to complain about.
 void refuse_what_stands_there(const fs::path& target, bool force) {
-    if (target.filename().empty() || fs::is_directory(target))
+    std::error_code failure;
+    if (target.filename().empty() || fs::is_directory(target, failure))
         refuse(target, "is a folder", EISDIR);
-    if (!force && fs::exists(fs::symlink_status(target)))
+    if (!force && fs::exists(fs::symlink_status(target, failure)))
         refuse(target, "exists already", EEXIST);
-    const fs::path folder = target.has_parent_path() ? target.parent_path() : fs::path{"."};
-    if (!fs::is_directory(folder))
+    const fs::path folder = folder_of(target);
+    if (fs::status(folder, failure).type() == fs::file_type::not_found)
         refuse(target, "is in a folder that does not exist", ENOENT);
+    if (fs::exists(folder, failure) && !fs::is_directory(folder, failure))
+        refuse(target, "is in what is no folder", ENOTDIR);
 }
 
 /// Renames, but never over another file: 0 or the reason. Falls back where the file system lacks
@@ -137,8 +145,7 @@ int rename_without_replacing(const fs::path& from, const fs::path& to) noexcept 
 
 /// So that the new name survives a power cut. Some file systems cannot; the file itself is synced.
 void sync_folder(const fs::path& target) noexcept {
-    const fs::path folder = target.has_parent_path() ? target.parent_path() : fs::path{"."};
-    const int descriptor = ::open(folder.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+    const int descriptor = ::open(folder_of(target).c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
     if (descriptor < 0)
         return;
     ::fsync(descriptor);
@@ -177,7 +184,8 @@ std::optional<std::pair<dev_t, ino_t>> identity(const fs::path& target) {
 bool same_file(const fs::path& a, const fs::path& b) {
     const auto whole = [](const fs::path& path) {
         std::error_code failure;
-        fs::path found = fs::weakly_canonical(fs::absolute(path), failure);
+        const fs::path full = fs::absolute(path, failure);
+        const fs::path found = failure ? fs::path{} : fs::weakly_canonical(full, failure);
         return failure ? path.lexically_normal() : found;
     };
     if (a == b || (a != "-" && b != "-" && whole(a) == whole(b)))

@@ -169,6 +169,17 @@ TEST(OutputFile, RefusesAMissingFolderAndAFolderAsTarget) {
     EXPECT_EQ(caught([&] { output_file file{folder.path(), true}; }).kind, fault::unwritable);
 }
 
+TEST(OutputFile, RefusesNamesThatTheSystemDoesNotTake) {
+    const test::temporary_folder folder;
+    test::write_file(folder / "file", "");
+    EXPECT_EQ(caught([&] { output_file file{folder / "file/a.csv"}; }).kind, fault::unwritable);
+    const fs::path long_name = folder / std::string(300, 'n');
+    const auto too_long = caught([&] { output_file file{long_name}; });
+    EXPECT_EQ(too_long.kind, fault::unwritable) << too_long.line;
+    const auto deep = caught([&] { output_file file{long_name / "a.csv"}; });
+    EXPECT_EQ(deep.kind, fault::unwritable) << deep.line;
+}
+
 TEST(OutputFile, WritesAFifoInPlace) {
     const test::temporary_folder folder;
     const fs::path pipe = folder / "pipe";

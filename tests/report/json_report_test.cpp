@@ -130,6 +130,17 @@ TEST(RecordingSummary, CountsGapsInTheSpanAndOnlyMeasuredSamples) {
     EXPECT_EQ(summarise(facts, 700, false).span_s, 0.7);
 }
 
+TEST(ResultsSchema, KnowsEveryNoteCodeAndTheSchemaNumber) {
+    const json schema =
+        json::parse(test::read_file(TONEWALK_TEST_SUPPORT "/../../docs/results.schema.json"));
+    std::vector<std::string> codes;
+    for (int code = 0; code <= static_cast<int>(note_code::residual_too_large); ++code)
+        codes.emplace_back(name(static_cast<note_code>(code)));
+    EXPECT_EQ(schema["$defs"]["note"]["properties"]["code"]["enum"], json(codes));
+    EXPECT_EQ(schema["properties"]["tonewalk"]["properties"]["schema"]["const"],
+              json_schema_version);
+}
+
 // Outside truth: Python's own JSON reader and the schema that stands in docs.
 TEST(OutsideJsonReport, IsReadByPythonAndKeepsToTheSchema) {
     const test::temporary_folder folder;
