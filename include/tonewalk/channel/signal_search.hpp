@@ -1,0 +1,54 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <optional>
+#include <vector>
+
+#include "tonewalk/base/note.hpp"
+#include "tonewalk/base/quantity.hpp"
+#include "tonewalk/base/sheet.hpp"
+#include "tonewalk/channel/plan.hpp"
+#include "tonewalk/recording/stream.hpp"
+
+namespace tonewalk {
+
+/// What the user says about the signal; empty: find it.
+struct search_request {
+    std::optional<signed_hz> carrier; ///< a starting point: the strongest line near it is taken
+    std::optional<double> tone_hz;    ///< likewise, within 2 %
+    std::optional<double> width_hz;   ///< flat width of the channel
+};
+
+struct found_tone {
+    double frequency_hz = 0.0;
+    double depth_percent = 0.0;
+};
+
+/// A carrier that stands out of the noise in the opening.
+struct found_carrier {
+    double offset_hz = 0.0; ///< from the centre
+    double level_dbfs = not_measured;
+    double carrier_to_noise_density_dbhz = not_measured;
+    std::vector<found_tone> tones;     ///< the chosen one first; empty: none steady
+    bool modulated_unsteadily = false; ///< mirrored lines, but none steady for 1 s
+};
+
+struct found_signal {
+    std::vector<found_carrier> carriers; ///< strongest first
+    double offset_hz = 0.0; ///< of the chosen one, from the centre of the first stretch
+    std::optional<double> tone_hz;
+    double width_hz = 0.0;
+    channel_plan plan;
+    double dc_amplitude = 0.0; ///< of the line at the centre, full scale = 1
+    double image_ratio = 0.0;  ///< amplitude of the image over the signal's, at most
+    note_set notes;
+    curve spectrum; ///< averaged, x Hz from the centre, y dBFS a bin
+};
+
+/// Looks for carrier and test tone in the opening: the first 2 s, or 32 MiB, of what is to be
+/// measured (docs/measurements.md, "Finding the signal"). Throws error{bad_request} for an absolute
+/// carrier without a centre, error{malformed} when a carrier, tone or width does not fit the band
+/// or nothing is found.
+[[nodiscard]] found_signal find_signal(block_source&, const search_request&);
+
+} // namespace tonewalk
