@@ -58,7 +58,8 @@ struct channel_chain::state {
 
     void begin(const channel_block&);
     void remember_non_finite(const channel_block&);
-    void deliver(sample_index up_to);
+    [[nodiscard]] sample_index begun() const noexcept; // baseband samples of the stretch so far
+    void deliver();
     void end();
 
     const front_end* front;
@@ -94,10 +95,13 @@ void channel_chain::state::begin(const channel_block& block) {
     input_samples = 0;
     non_finite.clear();
     ready.clear();
-    ready_first = last.begin(middle.begin(-static_cast<sample_index>(front->delay_outputs())));
+    ready_first = 0;
     stretch = {.index = block.stretch,
                .start_s = static_cast<double>(about.position) / facts->sample_rate_hz,
-               .held = front->holds(channel, block.stretch)};
+               .held = block.held};
+    if (stretch.held) {
+        ready_first = last.begin(middle.begin(-static_cast<sample_index>(front->delay_outputs())));
+    }
     for (baseband_sink* sink : sinks) {
         sink->begin_stretch(stretch);
     }
@@ -122,8 +126,14 @@ void channel_chain::state::remember_non_finite(const channel_block& block) {
     }
 }
 
-/// Hands on what is ready, baseband samples 0 to up_to - 1 only.
-void channel_chain::state::deliver(sample_index up_to) {
+sample_index channel_chain::state::begun() const noexcept {
+    const auto step = static_cast<sample_index>(decimation);
+    return (input_samples + step - 1) / step;
+}
+
+/// Hands on what is ready, from baseband sample 0 to the last that the stretch has begun.
+void channel_chain::state::deliver() {
+    const sample_index up_to = begun();
     std::size_t place = ready_first < 0 ? static_cast<std::size_t>(-ready_first) : 0;
     while (place < ready.size() && ready_first + static_cast<sample_index>(place) < up_to) {
         const sample_index first = ready_first + static_cast<sample_index>(place);
@@ -146,19 +156,20 @@ void channel_chain::state::deliver(sample_index up_to) {
 }
 
 void channel_chain::state::end() {
-    middle_out.clear();
-    middle.end(middle_out);
-    last.add(middle_out, ready);
-    last.end(ready);
-    const auto step = static_cast<sample_index>(decimation);
-    deliver((input_samples + step - 1) / step);
+    if (stretch.held) {
+        middle_out.clear();
+        middle.end(middle_out);
+        last.add(middle_out, ready);
+        last.end(ready);
+        deliver();
+    }
     for (baseband_sink* sink : sinks) {
         sink->end_stretch();
     }
     open = false;
 }
 
-void channel_chain::add(const channel_block& block) noexcept {
+void channel_chain::add(const channel_block& block) {
     state& s = *state_;
     if (!s.open) {
         s.begin(block);
@@ -169,15 +180,10 @@ void channel_chain::add(const channel_block& block) noexcept {
         s.middle_out.clear();
         s.middle.add(block.iq, s.middle_out);
         s.last.add(s.middle_out, s.ready);
-        const auto step = static_cast<sample_index>(s.decimation);
-        s.deliver((s.input_samples + step - 1) / step);
     } else {
-        const auto step = static_cast<sample_index>(s.decimation);
-        const sample_index known = (s.input_samples + step - 1) / step;
-        s.ready.resize(static_cast<std::size_t>(std::max<sample_index>(0, known - s.ready_first)),
-                       cf32{});
-        s.deliver(known);
+        s.ready.assign(static_cast<std::size_t>(s.begun() - s.ready_first), cf32{});
     }
+    s.deliver();
     if (block.ends_stretch) {
         s.end();
     }
@@ -209,16 +215,16 @@ double channel_chain::response(double hz) const noexcept {
 }
 
 double channel_chain::noise_bandwidth_hz() const noexcept {
-    constexpr int steps = 4000;
-    const double rate = state_->last.output_rate_hz();
+    // |response|^2 is a cosine sum of at most 2 x settle_samples() terms (what the decimation folds
+    // in lies 100 dB down): a plain sum over more points than that is its integral.
+    const std::size_t points = 4 * settle_samples() + 4;
+    const double step_hz = rate_hz() / static_cast<double>(points);
     double sum = 0.0;
-    for (int k = 0; k < steps;
-         ++k) { // the filter is periodic in its rate: the plain sum is exact enough
-        const double hz = rate * ((k + 0.5) / steps - 0.5);
-        const double gain = response(hz);
+    for (std::size_t k = 0; k < points; ++k) {
+        const double gain = response(step_hz * static_cast<double>(k) - rate_hz() / 2.0);
         sum += gain * gain;
     }
-    return sum * rate / steps;
+    return sum * step_hz;
 }
 
 } // namespace tonewalk

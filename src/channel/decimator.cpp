@@ -1,6 +1,8 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "decimator.hpp"
 
+#include <algorithm>
+#include <cassert>
 #include <utility>
 
 #include "tonewalk/maths/fir.hpp"
@@ -23,6 +25,7 @@ decimator::decimator(std::vector<double> taps, double rate_hz, std::size_t decim
     for (std::size_t k = 0; k < taps_.size(); ++k) {
         lane_taps_[k] = static_cast<float>(taps_[k]);
     }
+    assert(taps_.size() % 2 == 1 && decimation_ <= taps_.size());
 }
 
 sample_index decimator::begin(sample_index first_input) {

@@ -52,15 +52,15 @@ double widest_hz(std::span<const channel_plan> plans) {
 struct direct_front_end::scratch final : workspace {
     scratch(std::size_t block_samples, std::size_t lead_samples, std::size_t padding,
             std::size_t tail)
-        : converted(block_samples), history(lead_samples + padding),
+        : converted(lead_samples + block_samples), history(lead_samples + padding),
           real(history + block_samples + tail), imaginary(history + block_samples + tail) {}
-    std::vector<cf32> converted; // a run of the block
+    std::vector<cf32> converted; // lead and block
     std::size_t history;         // real[history] is the block's first sample
     std::vector<float> real, imaginary;
 };
 
 direct_front_end::direct_front_end(const stream_facts& facts, std::span<const channel_plan> plans)
-    : converter_{facts}, input_rate_hz_{facts.sample_rate_hz} {
+    : converter_{facts}, frame_bytes_{facts.frame_bytes()}, input_rate_hz_{facts.sample_rate_hz} {
     const double width_hz = widest_hz(plans);
     decimation_ = choose_decimation(input_rate_hz_, width_hz);
     output_rate_hz_ = input_rate_hz_ / static_cast<double>(decimation_);
@@ -119,36 +119,14 @@ double direct_front_end::response(std::size_t, double hz) const noexcept {
 }
 
 std::unique_ptr<workspace> direct_front_end::make_workspace(std::size_t block_samples) const {
-    return std::make_unique<scratch>(block_samples + lead(), lead(),
-                                     padded_taps_ - low_pass_.size(),
+    return std::make_unique<scratch>(block_samples, lead(), padded_taps_ - low_pass_.size(),
                                      (delay_outputs_ + 1) * decimation_);
 }
 
 void direct_front_end::process(const raw_block& block, workspace& space, raw_counts& counts,
                                std::span<const std::span<cf32>> out) const noexcept {
     auto& s = static_cast<scratch&>(space);
-    const std::size_t frame =
-        block.count + block.lead > 0 ? block.bytes.size() / (block.count + block.lead) : 0;
-    const auto split = [&s](std::size_t place, std::size_t n) {
-        for (std::size_t k = 0; k < n; ++k) {
-            s.real[place + k] = s.converted[k].real();
-            s.imaginary[place + k] = s.converted[k].imag();
-        }
-    };
-    const std::size_t missing = s.history - block.lead;
-    std::fill_n(s.real.begin(), missing, 0.0F);
-    std::fill_n(s.imaginary.begin(), missing, 0.0F);
-    converter_.convert(block.bytes.first(block.lead * frame),
-                       std::span{s.converted}.first(block.lead));
-    split(missing, block.lead);
-    counts.clear();
-    converter_.convert(block.bytes.subspan(block.lead * frame),
-                       std::span{s.converted}.first(block.count), block.first, cell_, counts);
-    split(s.history, block.count);
-    const auto end = static_cast<std::ptrdiff_t>(s.history + block.count);
-    std::fill(s.real.begin() + end, s.real.end(), 0.0F);
-    std::fill(s.imaginary.begin() + end, s.imaginary.end(), 0.0F);
-
+    load(block, s, counts);
     for (std::size_t channel = 0; channel < out.size(); ++channel) {
         const int which = tuning_of_[channel][block.stretch];
         if (which < 0) {
@@ -157,6 +135,31 @@ void direct_front_end::process(const raw_block& block, workspace& space, raw_cou
             filter(tunings_[static_cast<std::size_t>(which)], s, block.first, out[channel]);
         }
     }
+}
+
+/// The block as two planes, real and imaginary; history that is missing and what would follow the
+/// block are zeros.
+void direct_front_end::load(const raw_block& block, scratch& s, raw_counts& counts) const noexcept {
+    const auto split = [&s](std::size_t place, std::span<const cf32> samples) {
+        for (std::size_t k = 0; k < samples.size(); ++k) {
+            s.real[place + k] = samples[k].real();
+            s.imaginary[place + k] = samples[k].imag();
+        }
+    };
+    const auto history = std::span{s.converted}.first(block.lead);
+    const auto fresh = std::span{s.converted}.subspan(block.lead, block.count);
+    const std::size_t missing = s.history - block.lead;
+    const std::size_t end = s.history + block.count;
+    for (std::vector<float>* plane : {&s.real, &s.imaginary}) {
+        std::fill_n(plane->begin(), missing, 0.0F);
+        std::fill(plane->begin() + static_cast<std::ptrdiff_t>(end), plane->end(), 0.0F);
+    }
+    counts.clear();
+    converter_.convert(block.bytes, history);
+    converter_.convert(block.bytes.subspan(block.lead * frame_bytes_), fresh, block.first, cell_,
+                       counts);
+    split(missing, history);
+    split(s.history, fresh);
 }
 
 void direct_front_end::filter(const tuning& t, const scratch& s, sample_index first_stored,

@@ -36,10 +36,12 @@ private:
     };
     struct scratch;
     [[nodiscard]] std::size_t tune(double offset_hz);
+    void load(const raw_block&, scratch&, raw_counts&) const noexcept;
     void filter(const tuning&, const scratch&, sample_index first_stored,
                 std::span<cf32>) const noexcept;
 
     sample_converter converter_;
+    std::size_t frame_bytes_;
     double input_rate_hz_, output_rate_hz_ = 0.0;
     std::size_t decimation_ = 1, cell_ = 1, delay_outputs_ = 0, padded_taps_ = 0;
     std::vector<double> low_pass_;

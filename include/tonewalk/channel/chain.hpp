@@ -23,7 +23,7 @@ struct channel_block {
 class chain {
 public:
     virtual ~chain() = default;
-    virtual void add(const channel_block&) noexcept = 0;
+    virtual void add(const channel_block&) = 0; ///< throws what a meter throws
     /// After the last block (also of a stopped pass): ends an open stretch and closes every sink.
     virtual void finish() = 0;
 };

@@ -10,15 +10,16 @@
 
 namespace tonewalk {
 
-/// The chain of one channel: decimates the front end's output to 4 to 6 times the width (the input
-/// rate where that is less), applies the channel filter (flat to 0.005 dB over the width, 100 dB
-/// down from 0.75 width off the carrier), removes all delay, and hands the samples to its sinks.
+/// The chain of one channel: decimates the front end's output to 4 to 6 times the width (no step is
+/// left, and the rate stays the input's, where that is below 8 times), applies the channel filter
+/// (flat to 0.005 dB over the width, 100 dB down from 0.75 width off the carrier; at the band's
+/// edge where that is nearer), removes all delay, and hands the samples to its sinks in short runs.
 class channel_chain final : public chain {
 public:
     channel_chain(const front_end&, std::size_t channel, const channel_plan&, const stream_facts&);
     ~channel_chain() override;
     void listen(baseband_sink&); ///< before the first block; sinks outlive the chain
-    void add(const channel_block&) noexcept override;
+    void add(const channel_block&) override;
     void finish() override;
 
     [[nodiscard]] double rate_hz() const noexcept; ///< of the baseband samples

@@ -38,13 +38,15 @@ public:
     /// Outputs still inside the filter when a stretch ends: output n stands at input sample
     /// (n - delay_outputs()) x decimation() of its stretch.
     [[nodiscard]] virtual std::size_t delay_outputs() const noexcept = 0;
+    /// One for every decimation() samples begun, and delay_outputs() more where a stretch ends.
     [[nodiscard]] virtual std::size_t outputs(const raw_block&) const noexcept = 0;
     [[nodiscard]] virtual bool holds(std::size_t channel, std::uint32_t stretch) const noexcept = 0;
     /// Amplitude response of `channel` at `hz` from its nominal carrier, from the taps themselves.
     [[nodiscard]] virtual double response(std::size_t channel, double hz) const noexcept = 0;
     [[nodiscard]] virtual std::unique_ptr<workspace>
     make_workspace(std::size_t block_samples) const = 0;
-    /// outputs(block) samples to each channel's span.
+    /// outputs(block) samples to each channel's span; the counts are those of the block without its
+    /// lead. Blocks of any whole number of cells give the same samples.
     virtual void process(const raw_block&, workspace&, raw_counts&,
                          std::span<const std::span<cf32>>) const noexcept = 0;
 };
