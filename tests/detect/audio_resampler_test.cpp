@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "tonewalk/detect/audio_resampler.hpp"
 
+#include <cstdlib>
 #include <fstream>
 
 #include <fmt/format.h>
@@ -138,7 +139,10 @@ TEST(AudioResampler, GivesOutputsForAsLongAsThereIsInput) {
 
 // Outside: SoX's `rate -v` on the same tone, 96 to 44.1 kHz, as float WAV without dither.
 TEST(OutsideResampling, AgreesWithSox) {
-    ASSERT_EQ(run_command("sox --version").status, 0) << "SoX is missing";
+    if (run_command("sox --version").status != 0) {
+        ASSERT_EQ(std::getenv("CI"), nullptr) << "SoX is missing";
+        GTEST_SKIP() << "SoX is missing";
+    }
     const temporary_folder folder;
     const auto in = real_tone(96000, 96000.0, 3217.0, 0.5);
     {

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "tonewalk/detect/envelope_detector.hpp"
 
+#include <cstdlib>
 #include <fstream>
 #include <sstream>
 
@@ -166,8 +167,10 @@ TEST(EnvelopeDetector, RefusesAChannelThatTheRateDoesNotHold) {
 // Outside: scipy's own envelope of the same samples (analytic signal by scipy.signal.hilbert of the
 // real signal at 12 kHz), read at the beat of two carriers, the second 6 dB down.
 TEST(OutsideEnvelope, AgreesWithScipyOnTwoCarriers) {
-    ASSERT_EQ(run_command(TONEWALK_TEST_PYTHON " -c 'import scipy.signal'").status, 0)
-        << "scipy is missing";
+    if (run_command(TONEWALK_TEST_PYTHON " -c 'import scipy.signal'").status != 0) {
+        ASSERT_EQ(std::getenv("CI"), nullptr) << "scipy is missing";
+        GTEST_SKIP() << "scipy is missing";
+    }
     const temporary_folder folder;
     const auto in = baseband(48000, 48000.0, [](double t) {
         return 0.4 + 0.4 * std::pow(10.0, -6.0 / 20.0) * std::polar(1.0, turn * 1000.0 * t);
