@@ -35,7 +35,7 @@ inline stream_facts facts_of(std::string_view format, double rate_hz, std::size_
 }
 
 /// A recording in memory. Stored index n stands at byte n x frame_bytes().
-class memory_source final : public block_source {
+class memory_source : public block_source {
 public:
     memory_source(stream_facts facts, std::vector<std::byte> frames)
         : facts_{std::move(facts)}, frames_{std::move(frames)} {}
