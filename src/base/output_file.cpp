@@ -205,6 +205,8 @@ output_file::output_file(std::filesystem::path target, bool force)
     }
     std::error_code failure;
     const fs::file_status there = fs::status(target_, failure);
+    if (failure && there.type() != fs::file_type::not_found)
+        fail(target_, failure.value());
     in_place_ = fs::exists(there) && !fs::is_regular_file(there) && !fs::is_directory(there);
     if (in_place_) {
         descriptor_ = ::open(target_.c_str(), O_WRONLY | O_NOCTTY | O_CLOEXEC);
