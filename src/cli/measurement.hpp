@@ -1,0 +1,68 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <filesystem>
+#include <memory>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "jobs.hpp"
+#include "options.hpp"
+#include "tonewalk/base/output_file.hpp"
+#include "tonewalk/channel/channel_chain.hpp"
+#include "tonewalk/channel/signal_search.hpp"
+#include "tonewalk/meter/line_meter.hpp"
+#include "tonewalk/meter/raw_watch.hpp"
+#include "tonewalk/pass/run_pass.hpp"
+#include "tonewalk/report/report_context.hpp"
+
+namespace tonewalk::cli {
+
+/// A recording that is open, the signal that was found in it, and the chain that takes it out.
+struct measurement {
+    std::unique_ptr<block_source> source;
+    found_signal found;
+    std::unique_ptr<const front_end> front;
+    std::unique_ptr<channel_chain> chain;
+    raw_watch watch;
+
+    [[nodiscard]] const stream_facts& facts() const noexcept { return source->facts(); }
+    [[nodiscard]] record_grid grid(double every_s, double window_s) const noexcept;
+    [[nodiscard]] line_meter::config meter(const record_grid&) const;
+};
+[[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&);
+
+/// Runs the pass; complains of input that failed halfway, whose result is then partial.
+[[nodiscard]] pass_report run(measurement&, const running_options&, const program&);
+
+/// How a pass ended, as an exit status: 0, 3 where input failed, 130 or 143 where it was stopped.
+[[nodiscard]] int status_of(const pass_report&, const program&);
+
+/// What every report says beside its result. `detector` and `used` are shown under "signal".
+[[nodiscard]] report_context context_of(const measurement&, const pass_report&, const program&,
+                                        const level_log&, std::string job, std::string detector,
+                                        quantity used);
+
+/// The outputs of a job, opened (and so checked) before measuring.
+class output_set {
+public:
+    explicit output_set(bool force) : force_{force} {}
+    /// Nothing for an empty path.
+    [[nodiscard]] std::optional<output_file> open(const std::string& path);
+    void
+    also(const std::filesystem::path&); ///< written by other means, but no two outputs may meet
+    void check() const { check_distinct_outputs(paths_); }
+    [[nodiscard]] bool uses_standard_output() const noexcept { return standard_output_; }
+
+private:
+    bool force_, standard_output_ = false;
+    std::vector<std::filesystem::path> paths_;
+};
+
+/// Summary, notes and cautions for people: the summary on standard output, or on standard error
+/// where that carries a result; notes on standard error.
+void tell(const report_context&, const sheet& result, const running_options&,
+          bool standard_output_taken, std::string plot_column);
+
+} // namespace tonewalk::cli
