@@ -1,6 +1,6 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
-// Measures a recording that it writes itself, a constant envelope of half of full scale, with the installed
-// library: 20 log10(1/2) = -6.0206 dBFS. Says what it found; fails where that is not so.
+// Measures a recording that it writes itself, a constant envelope of half of full scale, with the
+// installed library: 20 log10(1/2) = -6.0206 dBFS. Says what it found; fails where that is not so.
 #include <cmath>
 #include <complex>
 #include <cstdio>
@@ -21,8 +21,10 @@ constexpr std::size_t samples = 4800;
 void write_half_scale(const char* path) {
     std::ofstream file{path, std::ios::binary};
     for (std::size_t n = 0; n < samples; ++n) {
-        const auto angle = static_cast<float>(2.0 * std::numbers::pi * static_cast<double>(n) / 48.0);
-        const std::complex<float> sample = 0.5F * std::complex<float>{std::cos(angle), std::sin(angle)};
+        const auto angle =
+            static_cast<float>(2.0 * std::numbers::pi * static_cast<double>(n) / 48.0);
+        const std::complex<float> sample =
+            0.5F * std::complex<float>{std::cos(angle), std::sin(angle)};
         file.write(reinterpret_cast<const char*>(&sample), sizeof sample);
     }
 }
@@ -55,7 +57,8 @@ int main(int argc, char** argv) {
     try {
         write_half_scale(argv[1]);
         const tonewalk::raw_result found = measure(argv[1]);
-        std::printf("%.4f dBFS over %lld samples\n", found.rms_dbfs, static_cast<long long>(found.samples));
+        std::printf("%.4f dBFS over %lld samples\n", found.rms_dbfs,
+                    static_cast<long long>(found.samples));
         return std::abs(found.rms_dbfs - 20.0 * std::log10(0.5)) < 1e-5 ? 0 : 1;
     } catch (const tonewalk::error& problem) {
         std::fprintf(stderr, "%s\n", problem.what());
