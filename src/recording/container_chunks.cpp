@@ -59,7 +59,7 @@ std::optional<chunk> chunk_at(const input_file& file, const chunk_style& style, 
                      ? number_at<std::uint32_t>(bytes, style.id_bytes, style.big_endian)
                      : number_at<std::int64_t>(bytes, style.id_bytes, style.big_endian);
     if (style.size_counts_header)
-        found.size -= static_cast<std::int64_t>(header);
+        found.size = std::max(found.size, std::int64_t{0}) - static_cast<std::int64_t>(header);
     if (!printable)
         return std::nullopt;
     return found;

@@ -32,7 +32,7 @@ template <class Stored>
 using value_of = decltype(centred(Stored{}));
 
 // Products of 32-bit integers need 126 bits in the sum, those of shorter ones fit for 2^33 samples.
-__extension__ typedef __int128 wide_integer;
+__extension__ using wide_integer = __int128;
 template <class Stored>
 using sum_of =
     std::conditional_t<std::is_floating_point_v<Stored>, double,
@@ -285,8 +285,8 @@ void raw_counts::clear() noexcept {
 }
 
 sample_converter::sample_converter(const stream_facts& facts)
-    : format_{facts.format}, lanes_{facts.lanes}, lane_{facts.lane},
-      code_shift_{0}, swap_iq_{facts.swap_iq}, inverted_{facts.inverted} {
+    : format_{facts.format}, lanes_{facts.lanes}, lane_{facts.lane}, swap_iq_{facts.swap_iq},
+      inverted_{facts.inverted} {
     assert(lane_ < lanes_);
     const auto bits = static_cast<unsigned>(8 * format_.component_bytes());
     if (!format_.is_float() && facts.code_bits != 0 && facts.code_bits < bits)

@@ -181,7 +181,7 @@ std::string read_sha512(const object_reader& global) {
     const auto written = global.text("core:sha512");
     if (!written)
         return {};
-    const std::string hex = lower_case(*written);
+    std::string hex = lower_case(*written);
     if (hex.size() != 128 || hex.find_first_not_of("0123456789abcdef") != hex.npos)
         global.fail("core:sha512", "must be 128 hex digits");
     return hex;

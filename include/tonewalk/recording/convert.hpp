@@ -60,7 +60,7 @@ private:
              std::size_t cell, raw_counts* counts) const noexcept;
     sample_format format_;
     std::size_t lanes_, lane_;
-    unsigned code_shift_;
+    unsigned code_shift_ = 0;
     bool swap_iq_, inverted_;
 };
 
