@@ -12,14 +12,14 @@ sheet& sheet::add(std::string key, std::string unit, cell value) {
 
 sheet& sheet::add(std::string key, std::string unit, const estimate& measured) {
     add(key, unit, cell{measured.value});
-    return add(key + "_u95", std::move(unit), cell{measured.u95});
+    return add(std::move(key) + "_u95", std::move(unit), cell{measured.u95});
 }
 
 sheet& sheet::add(std::string key, std::string unit, const interval_estimate& measured) {
     add(key, unit, cell{measured.value});
     add(key + "_low95", unit, cell{measured.low95});
     add(key + "_high95", unit, cell{measured.high95});
-    return add(key + "_u95", std::move(unit), cell{measured.u95});
+    return add(std::move(key) + "_u95", std::move(unit), cell{measured.u95});
 }
 
 sheet& sheet::add(sheet_table table) {
