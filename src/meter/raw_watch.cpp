@@ -2,8 +2,10 @@
 #include "tonewalk/meter/raw_watch.hpp"
 
 #include <algorithm>
+#include <bit>
 #include <cmath>
 #include <numbers>
+#include <optional>
 
 #include <fmt/core.h>
 
@@ -12,24 +14,58 @@
 namespace tonewalk {
 namespace {
 
-constexpr double clipped_ratio = 4.0;    // the extreme code over the mean of the next three
+constexpr double clipped_ratio = 4.0;    // the extreme code over the mean of those next to it
+constexpr double clipped_sigmas = 5.0;   // beyond what the scatter of a few peaks explains
 constexpr std::int64_t least_codes = 64; // both rails together; fewer are not judged
 
-/// Samples on a rail that holds more than a signal's own turning points put there. A clean sine's
-/// extreme code holds 3.0 times what the next three hold on average.
-std::uint64_t clipped_on(const rail_tally& rail) {
-    const double others =
-        static_cast<double>(rail.counts[1] + rail.counts[2] + rail.counts[3]) / 3.0;
-    const auto extreme = static_cast<double>(rail.counts[0]);
-    // Poisson scatter of a handful of peaks is no clipping: five standard deviations above the
-    // rule.
-    const bool more_than_chance =
-        extreme > clipped_ratio * others + 5.0 * std::sqrt(clipped_ratio * (others + 1.0));
-    return extreme > clipped_ratio * others && more_than_chance ? rail.counts[0] : 0;
+/// The largest code that the format can hold, or that floats made from integers stop at.
+std::int64_t full_scale_code(const stream_facts& facts) {
+    if (facts.format.is_float()) {
+        return std::bit_cast<std::uint32_t>(1.0F) >> 8U;
+    }
+    const std::size_t stored_bits = 8 * facts.format.component_bytes();
+    const std::size_t bits = facts.code_bits != 0 ? facts.code_bits : stored_bits;
+    return (std::int64_t{1} << (bits - 1)) - 1;
+}
+
+/// Component samples on a rail that holds more of them than a signal's own turning points put
+/// there: the extreme code of a clean sine holds 3.0 times what the next three hold on average.
+/// Codes that never occur are left out: samples may lie on a grid coarser than their codes (12 bits
+/// left-aligned in 16, floats made from integers). Where that leaves none, only the format's full
+/// scale tells a clipped rail from a grid; nothing otherwise.
+std::optional<std::uint64_t> clipped_on(const rail_tally& rail, std::int64_t full_scale) {
+    double sum = 0.0, occupied = 0.0;
+    for (std::size_t k = 1; k < rail.counts.size(); ++k) {
+        sum += static_cast<double>(rail.counts[k]);
+        occupied += rail.counts[k] > 0 ? 1.0 : 0.0;
+    }
+    const double expected = occupied > 0.0 ? clipped_ratio * sum / occupied : 0.0;
+    const double scatter = clipped_sigmas * std::sqrt(expected + clipped_ratio);
+    if (static_cast<double>(rail.counts[0]) <= expected + scatter) {
+        return 0;
+    }
+    if (occupied == 0.0 && rail.outermost < full_scale) {
+        return std::nullopt;
+    }
+    return rail.counts[0];
 }
 
 double power_db(double power) {
     return decibel::from_power_ratio(power).db();
+}
+
+note clipped_note(std::uint64_t clipped, double samples, bool is_complex) {
+    const double components = is_complex ? 2.0 * samples : samples;
+    return {note_code::clipped, severity::warning,
+            fmt::format("{} values stand on the outermost code ({:.3g} % of all)", clipped,
+                        100.0 * static_cast<double>(clipped) / components),
+            "record again with less gain: peaks and distortion are not to be trusted"};
+}
+
+note non_finite_note(std::uint64_t zeroed) {
+    return {note_code::non_finite_samples, severity::warning,
+            fmt::format("{} samples are not numbers and were taken as zero", zeroed),
+            "records that they touch are null; find out what wrote them"};
 }
 
 } // namespace
@@ -49,18 +85,24 @@ void raw_watch::add(const raw_counts& counts, std::size_t samples) {
     positive_.merge(counts.positive);
     negative_.merge(counts.negative);
     samples_ += samples;
-    for (const sample_range& range : counts.non_finite) {
-        non_finite_ += static_cast<std::uint64_t>(range.count);
-    }
+    non_finite_ += counts.zeroed;
 }
 
 raw_result raw_watch::result() const {
     raw_result r;
     r.samples = static_cast<sample_index>(samples_);
-    const double n = static_cast<double>(samples_ - std::min(samples_, non_finite_));
-    if (n <= 0.0) {
-        return r;
+    if (samples_ > non_finite_) {
+        judge_levels(r);
+        judge_clipping(r);
     }
+    if (non_finite_ > 0) {
+        r.doubts.add(non_finite_note(non_finite_));
+    }
+    return r;
+}
+
+void raw_watch::judge_levels(raw_result& r) const {
+    const double n = static_cast<double>(samples_ - non_finite_);
     const double mean_i = total_.i / n, mean_q = total_.q / n;
     const double power_i = total_.ii / n, power_q = total_.qq / n;
     const bool is_complex = facts_->format.is_complex;
@@ -69,31 +111,29 @@ raw_result raw_watch::result() const {
     r.peak_dbfs = power_db(total_.peak_power);
     r.peak_component_dbfs = power_db(total_.peak_component * total_.peak_component);
     r.dc_dbfs = power_db(mean_i * mean_i + mean_q * mean_q);
-    const double var_i = power_i - mean_i * mean_i, var_q = power_q - mean_q * mean_q;
-    if (is_complex && var_i > 0.0 && var_q > 0.0) {
-        r.iq_gain_error_db = power_db(var_i / var_q);
+    const double variance_i = power_i - mean_i * mean_i, variance_q = power_q - mean_q * mean_q;
+    if (is_complex && variance_i > 0.0 && variance_q > 0.0) {
         const double covariance = total_.iq / n - mean_i * mean_q;
-        const double sine = std::clamp(covariance / std::sqrt(var_i * var_q), -1.0, 1.0);
-        r.iq_phase_error_deg = std::asin(sine) * 180.0 / std::numbers::pi;
+        const double sine = covariance / std::sqrt(variance_i * variance_q);
+        r.iq_gain_error_db = power_db(variance_i / variance_q);
+        r.iq_phase_error_deg = std::asin(std::clamp(sine, -1.0, 1.0)) * 180.0 / std::numbers::pi;
     }
-    r.clipping_judged = positive_.outermost + negative_.outermost + 1 >= least_codes;
-    if (r.clipping_judged) {
-        r.clipped_samples = clipped_on(positive_) + clipped_on(negative_);
+}
+
+void raw_watch::judge_clipping(raw_result& r) const {
+    const std::int64_t codes = std::max<std::int64_t>(0, positive_.outermost) +
+                               std::max<std::int64_t>(0, negative_.outermost) + 1;
+    if (codes < least_codes) {
+        return;
     }
+    const std::int64_t full_scale = full_scale_code(*facts_);
+    const auto above = clipped_on(positive_, full_scale), below = clipped_on(negative_, full_scale);
+    r.clipped_samples = above.value_or(0) + below.value_or(0);
+    r.clipping_judged = r.clipped_samples > 0 || (above && below);
     if (r.clipped_samples > 0) {
-        r.doubts.add(
-            {note_code::clipped, severity::warning,
-             fmt::format("{} component samples stand on the extreme code ({:.3f} % of all)",
-                         r.clipped_samples, 50.0 * static_cast<double>(r.clipped_samples) / n),
-             "lower the gain and record again: peaks and distortion are not to be trusted"});
+        r.doubts.add(clipped_note(r.clipped_samples, static_cast<double>(samples_ - non_finite_),
+                                  facts_->format.is_complex));
     }
-    if (non_finite_ > 0) {
-        r.doubts.add(
-            {note_code::non_finite_samples, severity::warning,
-             fmt::format("some {} samples are not numbers and were taken as zero", non_finite_),
-             "records that they touch are null; find out what wrote them"});
-    }
-    return r;
 }
 
 sheet describe(const raw_result& r) {

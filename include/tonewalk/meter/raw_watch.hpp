@@ -13,17 +13,17 @@ namespace tonewalk {
 /// What the raw samples themselves say (2-jobs look; thresholds in docs/results.md).
 struct raw_result {
     double rms_dbfs = not_measured, peak_dbfs = not_measured, peak_component_dbfs = not_measured;
-    double dc_dbfs = not_measured;
-    double iq_gain_error_db = not_measured;   ///< 20 log gI/gQ; NaN for real samples
+    double dc_dbfs = not_measured;          ///< of the mean; of real samples too as they are stored
+    double iq_gain_error_db = not_measured; ///< 20 log gI/gQ; NaN for real samples
     double iq_phase_error_deg = not_measured; ///< e in I = cos, Q = sin(wt + e)
-    std::uint64_t clipped_samples = 0;
-    bool clipping_judged = false;
+    std::uint64_t clipped_samples = 0; ///< components that stand on a clipped rail's outermost code
+    bool clipping_judged = false;      ///< false: fewer than 64 codes, or too coarse a grid to tell
     sample_index samples = 0;
     note_set doubts; ///< clipped, non-finite-samples
 };
 [[nodiscard]] sheet describe(const raw_result&);
 
-/// Adds up what the front end counts, block by block in order.
+/// Adds up what the front end counts, block by block in order; `facts` outlives it.
 class raw_watch {
 public:
     explicit raw_watch(const stream_facts&);
@@ -31,6 +31,8 @@ public:
     [[nodiscard]] raw_result result() const;
 
 private:
+    void judge_levels(raw_result&) const;
+    void judge_clipping(raw_result&) const;
     const stream_facts* facts_;
     cell_sums total_;
     rail_tally positive_, negative_;
