@@ -37,9 +37,9 @@ std::uint64_t float_code(sample_type type, double value) noexcept {
 } // namespace
 
 sample_store::sample_store(const scene& whole)
-    : format_{whole.format}, component_bytes_{whole.format.component_bytes()}, scale_{1.0},
-      noise_lsb_rms_{whole.receiver.noise_lsb_rms}, middle_{0},
-      noise_{whole.seed, converter_noise_stream}, non_finite_{whole.receiver.non_finite} {
+    : format_{whole.format}, component_bytes_{whole.format.component_bytes()},
+      noise_lsb_rms_{whole.receiver.noise_lsb_rms}, noise_{whole.seed, converter_noise_stream},
+      non_finite_{whole.receiver.non_finite} {
     if (format_.is_float())
         return;
     const std::uint64_t half = std::uint64_t{1} << (8U * component_bytes_ - 1U);

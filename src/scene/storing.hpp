@@ -27,8 +27,9 @@ private:
 
     sample_format format_;
     std::size_t component_bytes_;
-    double scale_, noise_lsb_rms_; // integers
-    std::uint64_t middle_;         // code of 0
+    double scale_ = 1.0;       // integers: codes per full scale
+    std::uint64_t middle_ = 0; // code of 0
+    double noise_lsb_rms_;
     random_stream noise_;
     std::vector<scene_non_finite> non_finite_;
 };

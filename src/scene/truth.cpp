@@ -104,7 +104,7 @@ double envelope_tone(cf64 carrier, cf64 above, cf64 below) noexcept {
 } // namespace
 
 struct scene_truth::state {
-    explicit state(const scene& given) : whole{given}, stretches{scene_layout(whole)} {
+    explicit state(scene given) : whole{std::move(given)}, stretches{scene_layout(whole)} {
         for (std::size_t k = 0; k < whole.carriers.size(); ++k)
             views.emplace_back(whole, k);
     }

@@ -52,6 +52,7 @@ cycle_means means_over_cycle(const scene_tone& tone) noexcept {
 /// Mean of (1 + sum of w_i) times the product of the turns, the tones' cycles independent.
 double folded_line(const std::vector<const scene_tone*>& sounding) {
     std::vector<cycle_means> means;
+    means.reserve(sounding.size());
     for (const scene_tone* tone : sounding)
         means.push_back(means_over_cycle(*tone));
     cf64 line{1.0, 0.0};
