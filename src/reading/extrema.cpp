@@ -55,6 +55,7 @@ private:
     [[nodiscard]] double width_s(std::size_t first, std::size_t last, double level) const;
     void set_prominence(std::vector<extremum>&, const std::vector<turn>&) const;
     [[nodiscard]] double shown_db(std::size_t place) const noexcept;
+    [[nodiscard]] std::size_t nearest_to(double time_s) const noexcept;
 
     std::vector<step> steps_;
     double sigmas_, least_ratio_, window_s_;
@@ -67,13 +68,17 @@ bool walk::differ(std::size_t higher, std::size_t lower) const noexcept {
            h.amplitude >= least_ratio_ * std::max(l.amplitude, l.sigma);
 }
 
-/// Alternating turns; the first and the last record are none.
+/// Alternating turns, each significant on both sides; so the first and the last record are none.
 std::vector<turn> walk::turns() const {
     std::vector<turn> found;
     std::size_t high = 0, low = 0;
     int direction = 0; // +1 rising: the high is open; -1 falling: the low is open
     const auto keep = [&](std::size_t place, extremum_kind kind) {
-        if (place > 0) {
+        bool turned = direction != 0; // the first turn: has the level come from somewhere else?
+        for (std::size_t k = 0; k < place && !turned; ++k) {
+            turned = kind == extremum_kind::peak ? differ(place, k) : differ(k, place);
+        }
+        if (turned) {
             found.push_back({place, kind});
         }
     };
@@ -225,19 +230,30 @@ extremum walk::placed_null(std::size_t place) const {
     const auto [from, until] = run_about(middle, null_reach * bottom_power, false);
     const auto fit = vertex(from, until);
     take_place(e, fit, from, until, middle);
-    const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x;
-    e.level_dbfs = fitted && !e.floor_limited ? level_from(fit->y, fit->y_sigma)
-                                              : level_of(*steps_[middle].record, which_);
+    const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x && !e.floor_limited;
+    const interval_estimate& nearest = level_of(*steps_[nearest_to(e.time_s)].record, which_);
+    e.level_dbfs = fitted ? level_from(fit->y, fit->y_sigma) : nearest;
     e.floor_limited = e.floor_limited || std::isnan(e.level_dbfs.value);
+    const double fitted_bottom =
+        fitted ? std::max(fit->y, bottom.sigma * bottom.sigma) : bottom_power;
     e.window_bound =
-        width_s(place, place, null_reach * bottom_power) < least_null_windows * window_s_;
-    if (e.window_bound) {
+        width_s(middle, middle, null_reach * fitted_bottom) < least_null_windows * window_s_;
+    if (e.window_bound) { // whichever of fit and record lets the null be less deep
         e.floor_limited = true;
+        e.level_dbfs.high95 = std::fmax(e.level_dbfs.high95, nearest.high95);
     }
     if (e.floor_limited) {
         e.level_dbfs.value = e.level_dbfs.low95 = e.level_dbfs.u95 = not_measured;
     }
     return e;
+}
+
+std::size_t walk::nearest_to(double time_s) const noexcept {
+    const auto apart = [time_s](const step& s) { return std::abs(s.record->time_s - time_s); };
+    const auto best =
+        std::min_element(steps_.begin(), steps_.end(),
+                         [&](const step& a, const step& b) { return apart(a) < apart(b); });
+    return static_cast<std::size_t>(best - steps_.begin());
 }
 
 extremum walk::placed(const turn& t) const {

@@ -57,7 +57,7 @@ inline std::vector<cf32> generate(const am_signal& s, double seconds, double fro
 struct meter_options {
     double every_s = 0.1, window_s = 0.2;
     double width_hz = 0.0; ///< 0: four fifths of a quarter of the rate, as a chain would give
-    std::optional<double> tone_hz; ///< as the opening gave it; empty: the truth
+    std::optional<double> tone_hz{}; ///< as the opening gave it; empty: the truth
     bool with_tone = true;
     bool envelope_in_use = false;
     std::size_t cut = 4093; ///< samples a call
