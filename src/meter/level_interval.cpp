@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 #include "tonewalk/maths/distribution.hpp"
 
@@ -21,7 +22,7 @@ double root_of_noncentrality(double ratio, double p, int degrees, double indepen
 
 } // namespace
 
-const amplitude_limits::table& amplitude_limits::table_for(int degrees, double independent) {
+amplitude_limits::table& amplitude_limits::table_for(int degrees, double independent) {
     const double k = std::clamp(independent, 2.0, most_independent);
     constexpr double buckets_per_e = 30.0; // about 3 % each
     const int bucket = static_cast<int>(std::lround(std::log(k) * buckets_per_e));
@@ -29,42 +30,59 @@ const amplitude_limits::table& amplitude_limits::table_for(int degrees, double i
     if (found != tables_.end()) {
         return found->second;
     }
-    table made;
     const double nominal = std::exp(bucket / buckets_per_e);
-    for (double root = 0.0; root <= most_root + step; root += step) {
-        made.low.push_back(root_of_noncentrality(root * root, below_low, degrees, nominal));
-        made.high.push_back(
-            root_of_noncentrality(std::max(1e-9, root * root), below_high, degrees, nominal));
-    }
+    const std::vector<double> unknown(static_cast<std::size_t>(most_root / step) + 2,
+                                      std::numeric_limits<double>::quiet_NaN());
+    table made{nominal, student_t_quantile(below_low, 2.0 * nominal), unknown, unknown};
     return tables_.emplace(std::pair{degrees, bucket}, std::move(made)).first->second;
 }
 
 amplitude_limits::pair amplitude_limits::operator()(double ratio, int degrees, double independent) {
     const double root = std::sqrt(std::max(0.0, ratio));
-    if (root < most_root) {
-        const table& t = table_for(degrees, independent);
-        const double place = root / step;
-        const auto k = static_cast<std::size_t>(place);
-        const double share = place - static_cast<double>(k);
-        const auto between = [&](const std::vector<double>& v) {
-            return v[k] + share * (v[k + 1] - v[k]);
-        };
-        return {between(t.low), between(t.high)};
+    table& t = table_for(degrees, independent);
+    if (root >= most_root) {
+        // Amplitude^2 in quadrature variances is about degrees x ratio - degrees; its scatter is 1,
+        // to which the noise's own uncertainty adds next to nothing here.
+        const double amplitude = std::sqrt(degrees * ratio - (degrees - 1.0));
+        return {amplitude - t.reach, amplitude + t.reach};
     }
-    // Amplitude^2 in quadrature variances is about degrees x ratio - degrees; its scatter is 1, to
-    // which the noise's own uncertainty adds next to nothing here.
-    const double amplitude = std::sqrt(degrees * ratio - (degrees - 1.0));
-    const double reach =
-        student_t_quantile(below_low, 2.0 * std::min(independent, most_independent));
-    return {amplitude - reach, amplitude + reach};
+    const auto at = [&](std::vector<double>& values, std::size_t k, double p) {
+        if (std::isnan(values[k])) {
+            const double here = std::max(1e-4, static_cast<double>(k) * step);
+            values[k] = root_of_noncentrality(here * here, p, degrees, t.nominal);
+        }
+        return values[k];
+    };
+    const double place = root / step;
+    const auto k = static_cast<std::size_t>(place);
+    const double share = place - static_cast<double>(k);
+    const auto between = [&](std::vector<double>& values, double p) {
+        const double left = at(values, k, p);
+        return left + share * (at(values, k + 1, p) - left);
+    };
+    return {between(t.low, below_low), between(t.high, below_high)};
 }
 
 double carrier_detection_ratio(double independent) {
     return independent * (std::pow(false_detection, -1.0 / independent) - 1.0);
 }
 
+/// P(F(4, 2K) > x) = y^K (1 + K (1 - y)) with y = K / (K + 2x), in closed form. Newton's steps for
+/// u = K (1 - y), from above: the logarithm of that probability is concave in u.
 double tone_detection_ratio(double independent) {
-    return f_quantile(1.0 - false_detection, 4.0, 2.0 * independent);
+    constexpr double known_noise = 9.2335; // u where K is endless
+    constexpr int steps = 60;
+    const double k = independent;
+    double u = std::min(known_noise, k * (1.0 - 1e-12));
+    for (int n = 0; n < steps; ++n) {
+        const double excess = k * std::log1p(-u / k) + std::log1p(u) - std::log(false_detection);
+        const double change = excess / (1.0 / (1.0 + u) - 1.0 / (1.0 - u / k));
+        u -= change;
+        if (std::abs(change) < 1e-12 * u) {
+            break;
+        }
+    }
+    return u / (2.0 * (1.0 - u / k));
 }
 
 } // namespace tonewalk

@@ -25,9 +25,11 @@ public:
 
 private:
     struct table {
-        std::vector<double> low, high; // at ratio = (k step)^2
+        double nominal = 0.0;          // the K that it is made for
+        double reach = 0.0;            // of Student's t
+        std::vector<double> low, high; // at ratio = (k step)^2; NaN until needed
     };
-    const table& table_for(int degrees, double independent);
+    table& table_for(int degrees, double independent);
     std::map<std::pair<int, int>, table> tables_;
 };
 

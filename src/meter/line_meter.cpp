@@ -63,9 +63,9 @@ struct line_meter::state {
     explicit state(const config& c)
         : set{c}, samples{static_cast<std::size_t>(c.grid.window_samples())},
           weights{hann_weights(samples)}, window_s{static_cast<double>(samples) / c.grid.rate_hz},
-          order{moment_order(window_s, most_offset_hz)}, noise{{c.grid.rate_hz, samples, c.width_hz,
-                                                                c.response}},
-          curve{0.0}, picture{c.width_hz, c.carrier_offset_hz} {
+          orders{orders_reaching(most_offset_hz, window_s, c.grid.rate_hz)}, plain{samples},
+          weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}}, curve{0.0},
+          picture{c.width_hz, c.carrier_offset_hz} {
         log.every_s = c.grid.every_s;
         log.window_s = window_s;
         log.width_hz = c.width_hz;
@@ -91,7 +91,8 @@ struct line_meter::state {
     std::size_t samples;         // of a record
     std::vector<double> weights; // Hann, sum 1
     double window_s;
-    std::size_t order;
+    moment_orders orders;
+    sample_runs plain, weighted; // of the record at hand
     noise_lines noise;
     frequency_curve curve;
     strip_picture picture;
@@ -229,10 +230,12 @@ void line_meter::state::measure(sample_index first) {
     p.index = log.records.size();
     p.stretch = stretch.index;
     p.time_s = stretch.start_s + set.grid.centre_s(next);
-    p.carrier = line_moments{record, weights, rate, f0, order};
+    plain.set(record);
+    weighted.set(record, weights);
+    p.carrier = line_moments{weighted, rate, f0, orders};
     if (set.tone_hz) {
-        p.upper = line_moments{record, weights, rate, f0 + tone(), order};
-        p.lower = line_moments{record, weights, rate, f0 - tone(), order};
+        p.upper = line_moments{weighted, rate, f0 + tone(), orders};
+        p.lower = line_moments{weighted, rate, f0 - tone(), orders};
     }
     const double own = own_frequency(p.carrier);
     const three_lines found = lines_at(p, own);
@@ -241,7 +244,7 @@ void line_meter::state::measure(sample_index first) {
         lines.push_back({own + tone(), found.upper});
         lines.push_back({own - tone(), found.lower});
     }
-    p.noise = noise.measure(record, lines);
+    p.noise = noise.measure(plain, lines);
     picture.add(p.time_s, noise.line_powers(), noise.bin_hz(), lines);
     const double power = std::norm(found.carrier);
     if (p.noise.lines > 0.0 && power > strong_ratio * std::max(p.noise.mean_power, least_noise)) {

@@ -2,6 +2,7 @@
 #include "line_moments.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <numbers>
 
@@ -9,29 +10,94 @@ namespace tonewalk {
 namespace {
 
 constexpr double pi = std::numbers::pi;
+constexpr std::size_t most_order = 40;
+
+/// Sum in 8 fixed lanes, so that several are added at a time.
+double sum_of(const run_values& values) noexcept {
+    constexpr std::size_t lanes = 8;
+    std::array<double, lanes> sums{};
+    for (std::size_t first = 0; first < run_samples; first += lanes) {
+        for (std::size_t k = 0; k < lanes; ++k) {
+            sums[k] += values[first + k];
+        }
+    }
+    return ((sums[0] + sums[4]) + (sums[2] + sums[6])) +
+           ((sums[1] + sums[5]) + (sums[3] + sums[7]));
+}
+
+void multiply(run_values& values, const run_values& by) noexcept {
+    for (std::size_t k = 0; k < run_samples; ++k) {
+        values[k] *= by[k];
+    }
+}
+
+/// `run` times the phasor's table, phase 0 at its first sample.
+sample_runs::run turned(const sample_runs::run& run, const sample_runs::run& table) noexcept {
+    sample_runs::run z;
+    for (std::size_t k = 0; k < run_samples; ++k) {
+        z.re[k] = run.re[k] * table.re[k] - run.im[k] * table.im[k];
+        z.im[k] = run.re[k] * table.im[k] + run.im[k] * table.re[k];
+    }
+    return z;
+}
+
+/// Sample times in a run, from its middle, in half runs.
+run_values times_in_run() noexcept {
+    constexpr double half = static_cast<double>(run_samples) / 2.0;
+    run_values t{};
+    for (std::size_t k = 0; k < run_samples; ++k) {
+        t[k] = (static_cast<double>(k) - half) / half;
+    }
+    return t;
+}
+
+std::size_t terms_until(double theta, double tolerance, std::size_t least) noexcept {
+    double term = 1.0;
+    std::size_t order = 0;
+    while (order < least || (order < most_order && term > tolerance)) {
+        ++order;
+        term *= theta / static_cast<double>(order);
+    }
+    return order;
+}
 
 } // namespace
 
-line_moments::line_moments(std::span<const cf32> samples, std::span<const double> window,
-                           double rate_hz, double f0_hz, std::size_t order)
-    : coefficients_(order + 1), f0_hz_{f0_hz}, window_s_{static_cast<double>(samples.size()) /
-                                                         rate_hz} {
-    const double half = static_cast<double>(samples.size()) / 2.0;
-    const cf64 step = std::polar(1.0, -2.0 * pi * f0_hz / rate_hz);
-    cf64 turn = std::polar(1.0, 2.0 * pi * f0_hz / rate_hz * half);
-    for (std::size_t n = 0; n < samples.size(); ++n) {
-        const double t = (static_cast<double>(n) - half) / half;
-        const double re = static_cast<double>(samples[n].real()),
-                     im = static_cast<double>(samples[n].imag());
-        double yr = window[n] * (re * turn.real() - im * turn.imag());
-        double yi = window[n] * (re * turn.imag() + im * turn.real());
-        for (cf64& moment : coefficients_) {
-            moment += cf64{yr, yi};
-            yr *= t;
-            yi *= t;
+moment_orders orders_reaching(double most_offset_hz, double window_s, double rate_hz) noexcept {
+    const double run_s = static_cast<double>(run_samples) / rate_hz;
+    const std::size_t window = terms_until(pi * most_offset_hz * window_s, 1e-10, 6);
+    return {window, std::min(window, terms_until(pi * most_offset_hz * run_s, 1e-10, 2))};
+}
+
+/// A run's few moments about its own middle give those about the window's:
+/// multiplying by t = middle + half_run x t_run takes moment q to middle x (q)
+/// + half_run x (q + 1).
+line_moments::line_moments(const sample_runs& weighted, double rate_hz, double f0_hz,
+                           const moment_orders& orders)
+    : coefficients_(orders.window + 1), f0_hz_{f0_hz}, window_s_{
+                                                           static_cast<double>(weighted.samples()) /
+                                                           rate_hz} {
+    static const run_values times = times_in_run();
+    const double half_window = static_cast<double>(weighted.samples()) / 2.0;
+    const double half_run = static_cast<double>(run_samples) / 2.0 / half_window;
+    run_phasor phasor{-f0_hz / rate_hz, std::polar(1.0, 2.0 * pi * f0_hz / rate_hz * half_window)};
+    double middle = half_run - 1.0;
+    std::array<cf64, most_order + 2> local{}; // one above the order stays zero
+    for (const sample_runs::run& run : weighted.runs()) {
+        sample_runs::run z = turned(run, phasor.table());
+        for (std::size_t q = 0; q <= orders.run; ++q) {
+            local[q] = product(phasor.now(), {sum_of(z.re), sum_of(z.im)});
+            multiply(z.re, times);
+            multiply(z.im, times);
         }
-        turn = cf64{turn.real() * step.real() - turn.imag() * step.imag(),
-                    turn.real() * step.imag() + turn.imag() * step.real()};
+        for (cf64& moment : coefficients_) {
+            moment += local[0];
+            for (std::size_t q = 0; q <= orders.run; ++q) {
+                local[q] = middle * local[q] + half_run * local[q + 1];
+            }
+        }
+        middle += 2.0 * half_run;
+        phasor.next_run();
     }
     cf64 factor{1.0, 0.0};
     for (std::size_t p = 1; p < coefficients_.size(); ++p) {
@@ -59,18 +125,6 @@ line_moments::series line_moments::derivatives(double hz) const noexcept {
         s.value = s.value * theta + *c;
     }
     return {s.value, s.first * per_hz, s.second * per_hz * per_hz};
-}
-
-std::size_t moment_order(double window_s, double most_offset_hz) noexcept {
-    constexpr std::size_t least = 6, most = 40;
-    const double theta = pi * most_offset_hz * window_s;
-    double term = 1.0;
-    std::size_t order = 0;
-    while (order < least || (order < most && term > 1e-10)) {
-        ++order;
-        term *= theta / static_cast<double>(order);
-    }
-    return order;
 }
 
 double hann_response(double bins) noexcept {

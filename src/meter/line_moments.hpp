@@ -2,23 +2,32 @@
 #pragma once
 
 #include <complex>
-#include <span>
 #include <vector>
 
+#include "sample_runs.hpp"
 #include "tonewalk/base/sample.hpp"
 
 namespace tonewalk {
 
-/// A record's Hann-windowed correlation at one frequency f0, with its moments in time, so that the
-/// correlation at f0 + delta is a short exact series: X(f0 + delta) = sum over p of
-/// (-j pi delta T)^p / p! M_p, with M_p the mean of w x (2t/T)^p e^(-j 2 pi f0 t), t from the
-/// centre. A line of amplitude a at f0 + delta gives X = a.
+/// How many moments are kept: of the whole window, and of each run of it on the
+/// way there.
+struct moment_orders {
+    std::size_t window = 0, run = 0;
+};
+/// Enough to reach `most_offset_hz` to 1e-10 of the line.
+[[nodiscard]] moment_orders orders_reaching(double most_offset_hz, double window_s,
+                                            double rate_hz) noexcept;
+
+/// A record's Hann-windowed correlation at one frequency f0, with its moments
+/// in time, so that the correlation at f0 + delta is a short exact series: X(f0
+/// + delta) = sum over p of
+/// (-j pi delta T)^p / p! M_p, with M_p the mean of w x (2t/T)^p e^(-j 2 pi f0
+/// t), t from the centre. A line of amplitude a at f0 + delta gives X = a.
 class line_moments {
 public:
     line_moments() = default;
-    /// `window` sums to 1 and is as long as `samples`.
-    line_moments(std::span<const cf32> samples, std::span<const double> window, double rate_hz,
-                 double f0_hz, std::size_t order);
+    /// `weighted`: the record times a window that sums to 1.
+    line_moments(const sample_runs& weighted, double rate_hz, double f0_hz, const moment_orders&);
     [[nodiscard]] double f0_hz() const noexcept { return f0_hz_; }
     [[nodiscard]] cf64 at(double hz) const noexcept;
     /// X and its first two derivatives by frequency, per Hz.
@@ -32,10 +41,8 @@ private:
     double f0_hz_ = 0.0, window_s_ = 0.0;
 };
 
-/// How many moments reach `most_offset_hz` to 1e-10 of the line.
-[[nodiscard]] std::size_t moment_order(double window_s, double most_offset_hz) noexcept;
-
-/// Amplitude of a line `bins` (delta T) off in a Hann-windowed correlation, 1 at 0.
+/// Amplitude of a line `bins` (delta T) off in a Hann-windowed correlation, 1
+/// at 0.
 [[nodiscard]] double hann_response(double bins) noexcept;
 /// The largest that |hann_response| takes from `bins` on.
 [[nodiscard]] double hann_leakage_bound(double bins) noexcept;

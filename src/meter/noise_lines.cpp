@@ -33,6 +33,15 @@ std::size_t fitting_size(std::size_t samples) {
     return size;
 }
 
+void take_out(sample_runs::run& from, const run_phasor& line) noexcept {
+    const double re = line.now().real(), im = line.now().imag();
+    const sample_runs::run& table = line.table();
+    for (std::size_t k = 0; k < run_samples; ++k) {
+        from.re[k] -= re * table.re[k] - im * table.im[k];
+        from.im[k] -= re * table.im[k] + im * table.re[k];
+    }
+}
+
 double distance_to_multiple(double hz, double of_hz) {
     const double nearest = std::round(hz / of_hz);
     return nearest == 0.0 ? hz : std::abs(hz - nearest * of_hz);
@@ -51,14 +60,13 @@ noise_lines::noise_lines(const config& c)
         squares += w * w;
     }
     constexpr double hann_noise_bins = 1.5;
-    to_hann_power_ = hann_noise_bins / static_cast<double>(record_samples_) / squares;
-    correction_.assign(fft_.size(), 1.0);
+    scale_.assign(fft_.size(), hann_noise_bins / static_cast<double>(record_samples_) / squares);
     for (std::size_t k = 0; k < fft_.size(); ++k) {
         const double hz = bin_hz_ * (k < (fft_.size() + 1) / 2 ? static_cast<double>(k)
                                                                : static_cast<double>(k) - size);
         if (std::abs(hz) <= width_hz_ / 2.0 && c.response) {
             const double gain = c.response(hz);
-            correction_[k] = 1.0 / (gain * gain);
+            scale_[k] /= gain * gain;
         }
     }
     for (std::size_t k = 0; k <= correlated_bins; ++k) {
@@ -97,35 +105,33 @@ std::size_t noise_lines::usable(std::span<const fitted_line> lines) const {
     return count;
 }
 
-void noise_lines::transform(std::span<const cf32> record, std::span<const fitted_line> lines) {
+void noise_lines::transform(const sample_runs& record, std::span<const fitted_line> lines) {
     const double centre = static_cast<double>(record_samples_) / 2.0;
-    struct oscillator {
-        cf64 value, step;
-    };
-    std::vector<oscillator> running;
+    running_.clear();
     for (const fitted_line& line : lines) {
-        const double per_sample = 2.0 * pi * line.hz / rate_hz_;
-        running.push_back(
-            {line.amplitude * std::polar(1.0, -per_sample * centre), std::polar(1.0, per_sample)});
+        const double turns = line.hz / rate_hz_;
+        running_.emplace_back(turns, line.amplitude * std::polar(1.0, -2.0 * pi * turns * centre));
     }
     const std::span<cf32> in = fft_.input();
-    for (std::size_t n = 0; n < in.size(); ++n) {
-        cf64 rest{static_cast<double>(record[n].real()), static_cast<double>(record[n].imag())};
-        for (oscillator& line : running) {
-            rest -= line.value;
-            line.value =
-                cf64{line.value.real() * line.step.real() - line.value.imag() * line.step.imag(),
-                     line.value.real() * line.step.imag() + line.value.imag() * line.step.real()};
+    const std::span<const double> weights = window_.values();
+    for (std::size_t first = 0; first < in.size(); first += run_samples) {
+        sample_runs::run rest = record.runs()[first / run_samples];
+        for (run_phasor& line : running_) {
+            take_out(rest, line);
+            line.next_run();
         }
-        const double w = window_.values()[n];
-        in[n] = {static_cast<float>(rest.real() * w), static_cast<float>(rest.imag() * w)};
+        const std::size_t count = std::min(run_samples, in.size() - first);
+        for (std::size_t k = 0; k < count; ++k) {
+            in[first + k] = {static_cast<float>(rest.re[k] * weights[first + k]),
+                             static_cast<float>(rest.im[k] * weights[first + k])};
+        }
     }
     fft_.run();
     const std::span<const cf32> out = fft_.output();
     for (std::size_t k = 0; k < out.size(); ++k) {
         const double re = static_cast<double>(out[k].real()),
                      im = static_cast<double>(out[k].imag());
-        powers_[k] = static_cast<float>((re * re + im * im) * to_hann_power_ * correction_[k]);
+        powers_[k] = static_cast<float>((re * re + im * im) * scale_[k]);
     }
 }
 
@@ -154,8 +160,7 @@ noise_reading noise_lines::average() {
     return {sum / count / bias, count, count * count / shared};
 }
 
-noise_reading noise_lines::measure(std::span<const cf32> record,
-                                   std::span<const fitted_line> lines) {
+noise_reading noise_lines::measure(const sample_runs& record, std::span<const fitted_line> lines) {
     transform(record, lines);
     chosen_.clear();
     kept_.clear();

@@ -6,6 +6,7 @@
 #include <span>
 #include <vector>
 
+#include "sample_runs.hpp"
 #include "tonewalk/base/sample.hpp"
 #include "tonewalk/maths/fft.hpp"
 #include "tonewalk/maths/window.hpp"
@@ -38,8 +39,8 @@ public:
         std::function<double(double)> response; ///< channel's amplitude response
     };
     explicit noise_lines(const config&);
-    /// The first line is the carrier. record.size() == record_samples.
-    [[nodiscard]] noise_reading measure(std::span<const cf32> record,
+    /// The first line is the carrier. record.samples() == record_samples.
+    [[nodiscard]] noise_reading measure(const sample_runs& record,
                                         std::span<const fitted_line> lines);
     /// Power of each transform line of the last record, fitted lines taken out, as of Hann lines;
     /// index 0 is 0 Hz, then upwards, negative frequencies last.
@@ -49,7 +50,7 @@ public:
     [[nodiscard]] std::size_t usable(std::span<const fitted_line> lines) const;
 
 private:
-    void transform(std::span<const cf32> record, std::span<const fitted_line> lines);
+    void transform(const sample_runs& record, std::span<const fitted_line> lines);
     [[nodiscard]] bool is_usable(double hz, std::span<const fitted_line> lines) const noexcept;
     [[nodiscard]] noise_reading average();
 
@@ -57,10 +58,10 @@ private:
     std::size_t record_samples_;
     fft fft_;
     window window_;
-    double to_hann_power_ = 1.0;      // |sum|^2 to the power that a Hann line of the record holds
-    std::vector<double> correction_;  // 1 / response^2 by bin
+    std::vector<double> scale_;       // |sum|^2 to that power, the response taken off, by bin
     std::vector<double> correlation_; // of powers, by distance in bins
     std::vector<float> powers_;
+    std::vector<run_phasor> running_;
     std::vector<int> chosen_; // bins, ascending frequency
     std::vector<double> kept_, sorted_;
 };
