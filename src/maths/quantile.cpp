@@ -16,7 +16,10 @@ double quantile_sorted(std::span<const double> sorted, double q) noexcept {
     const auto below = static_cast<std::size_t>(position);
     const std::size_t above = std::min(below + 1, sorted.size() - 1);
     const double share = position - static_cast<double>(below);
-    return share == 0.0 ? sorted[below] : sorted[below] + share * (sorted[above] - sorted[below]);
+    if (share == 0.0 || std::isinf(sorted[below])) { // minus infinity stays what it is
+        return sorted[below];
+    }
+    return sorted[below] + share * (sorted[above] - sorted[below]);
 }
 
 double quantile(std::vector<double> values, double q) {

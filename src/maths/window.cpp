@@ -25,19 +25,31 @@ double transform_magnitude(std::size_t size, double bins, Value value) {
     return std::abs(sum);
 }
 
+/// a0 - a1 cos x + a2 cos 2x - ..., the multiples by their recurrence.
+double cosine_sum(const std::vector<double>& coefficients, double cosine) {
+    double before = 1.0, now = cosine; // cos 0, cos x
+    double sum = coefficients.front(), sign = -1.0;
+    for (std::size_t k = 1; k < coefficients.size(); ++k) {
+        sum += sign * coefficients[k] * now;
+        sign = -sign;
+        const double next = 2.0 * cosine * now - before;
+        before = now;
+        now = next;
+    }
+    return sum;
+}
+
 } // namespace
 
 window::window(std::size_t size, std::span<const double> coefficients)
     : values_(size), coefficients_(coefficients.begin(), coefficients.end()) {
     assert(size > 0 && !coefficients.empty());
-    for (std::size_t n = 0; n < size; ++n) {
+    for (std::size_t n = 0; n <= size / 2; ++n) {
         const double turn = static_cast<double>(n) / static_cast<double>(size);
-        double sign = 1.0;
-        for (std::size_t k = 0; k < coefficients_.size(); ++k) {
-            values_[n] +=
-                sign * coefficients_[k] * std::cos(two_pi * static_cast<double>(k) * turn);
-            sign = -sign;
-        }
+        values_[n] = cosine_sum(coefficients_, std::cos(two_pi * turn));
+    }
+    for (std::size_t n = size / 2 + 1; n < size; ++n) {
+        values_[n] = values_[size - n];
     }
 }
 
