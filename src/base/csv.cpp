@@ -76,7 +76,7 @@ std::string with_plain_line_ends(std::string_view text) {
 /// Semicolons where the header row has them and no comma outside quotes.
 char delimiter_of(std::string_view text) {
     bool quoted_part = false, semicolon = false;
-    for (const char letter : text.substr(0, text.find('\n', text.find_first_not_of("\n")))) {
+    for (const char letter : text.substr(0, text.find('\n', text.find_first_not_of('\n')))) {
         if (letter == '"')
             quoted_part = !quoted_part;
         else if (letter == ',' && !quoted_part)

@@ -117,12 +117,9 @@ int run_hear(const hear_options& o, const program& program) {
     output_set outputs{o.running.force};
     outputs.also(o.output);
     std::optional<output_file> json = outputs.open(o.json.json);
+    audio_file file{choice.file};
 
     measurement m = open_measurement(o.recording, o.signal);
-    if (m.facts().samples()) { // a plain WAV where it is known to suffice
-        choice.file.samples = audio_length(m.facts().span_s(), choice.options.audio_rate_hz);
-    }
-    audio_file file{choice.file};
     constexpr double every_s = 0.1, window_s = 0.2;
     line_meter::config meter_config = m.meter(m.grid(every_s, window_s));
     meter_config.envelope_in_use = choice.detector == detector_kind::envelope;
@@ -158,6 +155,7 @@ int run_hear(const hear_options& o, const program& program) {
                                  .low_hz = band.low_hz,
                                  .high_hz = band.high_hz,
                                  .tone_hz = log.tone_hz}};
+    file.expect(choice.options.audio_samples);
     audio_sink* const sinks[] = {&file, &quality};
     const audio_result audio = render_audio(spool, choice.options, carrier_of(log), sinks);
     file.finish();

@@ -7,7 +7,7 @@
 #include <cerrno>
 #include <cmath>
 #include <cstdio>
-#include <limits>
+#include <optional>
 #include <string>
 #include <system_error>
 #include <utility>
@@ -46,18 +46,20 @@ int bytes_of(audio_sample sample) {
 }
 
 /// RF64 only where needed: it implies the extensible form of the format chunk.
-bool fits_plain_wav(const audio_file::config& wanted) {
+bool fits_plain_wav(audio_sample sample, std::optional<std::int64_t> samples) {
     constexpr std::int64_t most_bytes = 0xFFFF'0000;
-    return wanted.samples && *wanted.samples <= most_bytes / bytes_of(wanted.sample);
+    return samples && *samples <= most_bytes / bytes_of(sample);
 }
 
-SF_INFO info_of(const audio_file::config& wanted, audio_container container) {
+SF_INFO info_of(const audio_file::config& wanted, std::optional<std::int64_t> samples) {
+    const bool flac = audio_container_of(wanted.target) == audio_container::flac;
     SF_INFO info{};
     info.samplerate = static_cast<int>(wanted.rate_hz);
     info.channels = 1;
-    info.format = subtype_of(wanted.sample) | (container == audio_container::flac ? SF_FORMAT_FLAC
-                                               : fits_plain_wav(wanted)           ? SF_FORMAT_WAV
-                                                                                  : SF_FORMAT_RF64);
+    info.format =
+        subtype_of(wanted.sample) | (flac                                     ? SF_FORMAT_FLAC
+                                     : fits_plain_wav(wanted.sample, samples) ? SF_FORMAT_WAV
+                                                                              : SF_FORMAT_RF64);
     return info;
 }
 
@@ -150,6 +152,7 @@ struct audio_file::state {
     std::unique_ptr<std::FILE, close_file> detour; // only where `out` cannot seek
     descriptor_io io;
     std::unique_ptr<SNDFILE, close_sound> sound;
+    std::optional<std::int64_t> expected;
     std::int64_t clipped = 0, added = 0;
 
     explicit state(const config& given) : wanted{given}, out{given.target, given.force} {
@@ -160,7 +163,10 @@ struct audio_file::state {
                 fail(std::generic_category().message(errno));
             io.descriptor = ::fileno(detour.get());
         }
-        SF_INFO info = info_of(wanted, audio_container_of(wanted.target));
+    }
+
+    void open_sound() {
+        SF_INFO info = info_of(wanted, expected);
         sound.reset(sf_open_virtual(&descriptor_io::functions, SFM_WRITE, &info, &io));
         if (!sound)
             fail(sf_strerror(nullptr));
@@ -175,8 +181,8 @@ struct audio_file::state {
                     valid_utf8(wanted.target.string()), "make room or choose another folder"};
     }
 
-    void check(sf_count_t written, std::size_t wanted_frames) const {
-        if (written != static_cast<sf_count_t>(wanted_frames))
+    void check(sf_count_t written, std::size_t frames) const {
+        if (written != static_cast<sf_count_t>(frames))
             fail(sf_strerror(sound.get()));
     }
 
@@ -208,7 +214,21 @@ struct audio_file::state {
             fail(std::generic_category().message(errno));
     }
 
+    void add(std::span<const float> samples) {
+        added += static_cast<std::int64_t>(samples.size());
+        assert(!expected || added <= *expected);
+        if (!sound)
+            open_sound();
+        while (!samples.empty()) {
+            const std::size_t count = std::min(samples.size(), block_samples);
+            add_block(samples.first(count));
+            samples = samples.subspan(count);
+        }
+    }
+
     void finish() {
+        if (!sound)
+            open_sound();
         const int failure = sf_close(sound.release());
         io.blank_peak_chunk();
         if (failure != 0 || io.failure != 0)
@@ -246,14 +266,13 @@ audio_file::audio_file(audio_file&&) noexcept = default;
 audio_file& audio_file::operator=(audio_file&&) noexcept = default;
 audio_file::~audio_file() = default;
 
+void audio_file::expect(std::int64_t samples) {
+    assert(!state_->sound);
+    state_->expected = samples;
+}
+
 void audio_file::add(std::span<const float> samples) {
-    state_->added += static_cast<std::int64_t>(samples.size());
-    assert(!state_->wanted.samples || state_->added <= *state_->wanted.samples);
-    while (!samples.empty()) {
-        const std::size_t count = std::min(samples.size(), block_samples);
-        state_->add_block(samples.first(count));
-        samples = samples.subspan(count);
-    }
+    state_->add(samples);
 }
 
 void audio_file::finish() {

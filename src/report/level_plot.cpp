@@ -105,6 +105,11 @@ struct level_axis {
     double bottom = 0.0, step = 1.0;
     int steps = 1, rows_per_step = 2;
     [[nodiscard]] int rows() const { return steps * rows_per_step + 1; }
+    /// Of the rows that stand at a step; others have none.
+    [[nodiscard]] std::string label(int row) const {
+        const int whole_steps = row / rows_per_step;
+        return row % rows_per_step == 0 ? fmt::format("{:.0f}", bottom + step * whole_steps) : "";
+    }
     /// Half rows from the bottom.
     [[nodiscard]] int place(double level) const {
         return static_cast<int>(std::lround((level - bottom) / step * 2.0 * rows_per_step));
@@ -151,7 +156,7 @@ std::optional<level_axis> axis_for(const std::vector<column>& columns) {
 class canvas {
 public:
     canvas(const level_axis& axis, std::size_t width)
-        : rows_(static_cast<std::size_t>(axis.rows()) + 2, std::string(width, ' ')) {}
+        : rows_(static_cast<std::size_t>(axis.rows() + 2), std::string(width, ' ')) {}
 
     /// Half rows `low` to `high` of a column.
     void fill(std::size_t c, int low, int high) {
@@ -163,12 +168,14 @@ public:
     }
     void put(int row, std::size_t c, char letter) { at(row, c) = letter; }
     /// Row -1 is the free one below.
-    [[nodiscard]] const std::string& row(int number) const {
-        return rows_[static_cast<std::size_t>(number + 1)];
-    }
+    [[nodiscard]] const std::string& row(int number) const { return rows_[place(number)]; }
 
 private:
-    char& at(int row, std::size_t c) { return rows_[static_cast<std::size_t>(row + 1)][c]; }
+    static std::size_t place(int row) {
+        const int from_bottom = row + 1;
+        return static_cast<std::size_t>(from_bottom);
+    }
+    char& at(int row, std::size_t c) { return rows_[place(row)][c]; }
     std::vector<std::string> rows_;
 };
 
@@ -262,9 +269,7 @@ std::string draw(const level_plot& plot, int columns) {
         const bool free_row = row == axis->rows() || row == -1;
         if (free_row && is_blank(drawn.row(row)))
             continue;
-        const bool labelled = !free_row && row % axis->rows_per_step == 0;
-        const double level = axis->bottom + axis->step * (row / axis->rows_per_step);
-        const std::string label = labelled ? fmt::format("{:.0f}", level) : "";
+        const std::string label = free_row ? "" : axis->label(row);
         text +=
             without_trailing_blanks(fmt::format("{:>{}} |{}", label, label_width, drawn.row(row)));
     }

@@ -103,13 +103,10 @@ std::vector<value_group> group_by_value(const std::vector<std::string_view>& key
                                    : std::optional{static_cast<std::size_t>(found - keys.begin())};
     };
     const auto belongs_to_another = [&](std::string_view key) {
-        for (const std::string_view ending : {random_ending, u95_ending, low_ending, high_ending}) {
-            const std::string_view stem =
-                key.substr(0, key.size() - std::min(key.size(), ending.size()));
-            if (key.ends_with(ending) && place_of(stem, ""))
-                return true;
-        }
-        return false;
+        constexpr std::array endings{random_ending, u95_ending, low_ending, high_ending};
+        return std::any_of(endings.begin(), endings.end(), [&](std::string_view ending) {
+            return key.ends_with(ending) && place_of(key.substr(0, key.size() - ending.size()), "");
+        });
     };
     std::vector<value_group> groups;
     for (std::size_t i = 0; i < keys.size(); ++i)

@@ -4,7 +4,6 @@
 #include <cstdint>
 #include <filesystem>
 #include <memory>
-#include <optional>
 #include <span>
 #include <string_view>
 
@@ -23,8 +22,9 @@ enum class audio_container { wav, flac };
 
 /// A mono audio file that appears whole or not at all. WAV turns into RF64 where it passes 4
 /// GiB. 1.0 is full scale: integers scale by 2^(bits-1), rounded; beyond ±1.0 they are clamped and
-/// counted, floats are kept. Equal samples give equal bytes: no time stamps, no peak chunk. Throws
-/// error{bad_request} for what the container cannot hold, error{unwritable} like output_file.
+/// counted, floats are kept. Equal samples and expectations give equal bytes: no time stamps, no
+/// peak chunk. Throws error{bad_request} for what the container cannot hold, error{unwritable} like
+/// output_file.
 class audio_file final : public audio_sink {
 public:
     struct config {
@@ -32,15 +32,15 @@ public:
         double rate_hz = 48000.0; ///< a whole number, 1 to 655350
         audio_sample sample = audio_sample::pcm16;
         bool force = false; ///< replace a file that is there
-        /// How many will come at most: small ones make plain WAV, which everything reads. Not
-        /// known: the extensible form, which a few old readers refuse.
-        std::optional<std::int64_t> samples = std::nullopt;
     };
     explicit audio_file(const config&);
     audio_file(audio_file&&) noexcept;
     audio_file& operator=(audio_file&&) noexcept;
     ~audio_file() override; ///< without finish(): nothing is left behind
 
+    /// How many samples will come at most, said before the first: what fits makes plain WAV, which
+    /// everything reads. Not said: the extensible form, which a few old readers refuse.
+    void expect(std::int64_t samples);
     void add(std::span<const float>) override; ///< finite samples
     void finish();                             ///< completes the file and gives it its name
     [[nodiscard]] std::int64_t clipped_samples() const noexcept;
