@@ -14,9 +14,9 @@ namespace tonewalk {
 
 /// What the user says about the signal; empty: find it.
 struct search_request {
-    std::optional<signed_hz> carrier; ///< a starting point: the strongest line near it is taken
-    std::optional<double> tone_hz;    ///< likewise, within 2 %
-    std::optional<double> width_hz;   ///< flat width of the channel
+    std::optional<signed_hz> carrier{}; ///< a starting point: the strongest line near it is taken
+    std::optional<double> tone_hz{};    ///< likewise, within 2 %
+    std::optional<double> width_hz{};   ///< flat width of the channel
 };
 
 struct found_tone {
