@@ -11,14 +11,10 @@ namespace tonewalk {
 namespace {
 
 constexpr double step = 0.25;               // of the root of the ratio
-constexpr double most_root = 18.0;          // 25 dB
+constexpr double most_root = 12.0;          // 21.6 dB
 constexpr double most_independent = 4000.0; // beyond, the noise counts as known
 constexpr double false_detection = 1e-3;
 constexpr double below_low = 0.975, below_high = 0.025;
-
-double root_of_noncentrality(double ratio, double p, int degrees, double independent) {
-    return std::sqrt(noncentral_f_noncentrality(ratio, p, degrees, 2.0 * independent));
-}
 
 } // namespace
 
@@ -41,15 +37,14 @@ amplitude_limits::pair amplitude_limits::operator()(double ratio, int degrees, d
     const double root = std::sqrt(std::max(0.0, ratio));
     table& t = table_for(degrees, independent);
     if (root >= most_root) {
-        // Amplitude^2 in quadrature variances is about degrees x ratio - degrees; its scatter is 1,
-        // to which the noise's own uncertainty adds next to nothing here.
+        // The amplitude in quadrature deviations: all but normal here, its variance estimated.
         const double amplitude = std::sqrt(degrees * ratio - (degrees - 1.0));
         return {amplitude - t.reach, amplitude + t.reach};
     }
     const auto at = [&](std::vector<double>& values, std::size_t k, double p) {
         if (std::isnan(values[k])) {
             const double here = std::max(1e-4, static_cast<double>(k) * step);
-            values[k] = root_of_noncentrality(here * here, p, degrees, t.nominal);
+            values[k] = std::sqrt(line_power_inverse(here * here, p, degrees, 2.0 * t.nominal));
         }
         return values[k];
     };

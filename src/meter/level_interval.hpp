@@ -11,8 +11,8 @@
 namespace tonewalk {
 
 /// 95 % limits of a line's amplitude from its power over the noise, where the noise itself was
-/// estimated from K independent lines: inversion of the noncentral F distribution, exact up to some
-/// 25 dB, asymptotic (Student t) above. Tables are made when first needed and kept.
+/// estimated from K independent lines: inversion of line_power_cdf (maths), exact up to some 21 dB,
+/// its limit (Student t) above. Tables are made when first needed and kept.
 class amplitude_limits {
 public:
     struct pair {

@@ -15,5 +15,15 @@ namespace tonewalk {
 /// The noncentrality at which P(X <= x) = p; 0 where even 0 gives less than p.
 [[nodiscard]] double noncentral_f_noncentrality(double x, double p, double degrees_above,
                                                 double degrees_below);
+[[nodiscard]] double noncentral_chi_square_cdf(double x, double degrees, double noncentrality);
+
+/// A line in noise of which only an estimate is known, from `noise_degrees` degrees of freedom.
+/// P(power <= x) where power is the line's and the noise's together, in means of noise alone, and
+/// `line` the line's power in variances of one of the `degrees` quadratures; both as if the
+/// estimate were true. Without a line this is Fisher's F; for a strong one the amplitude follows
+/// Student's t.
+[[nodiscard]] double line_power_cdf(double x, double degrees, double noise_degrees, double line);
+/// The line at which that probability is p; 0 where even no line gives less than p.
+[[nodiscard]] double line_power_inverse(double x, double p, double degrees, double noise_degrees);
 
 } // namespace tonewalk
