@@ -141,10 +141,10 @@ struct descriptor_io {
 /// output is a pipe or device, a nameless file that is copied at the end.
 struct audio_file::state {
     struct close_sound {
-        void operator()(SNDFILE* sound) const noexcept { sf_close(sound); }
+        void operator()(SNDFILE* open) const noexcept { sf_close(open); }
     };
     struct close_file {
-        void operator()(std::FILE* file) const noexcept { std::fclose(file); }
+        void operator()(std::FILE* open) const noexcept { std::fclose(open); }
     };
 
     config wanted;

@@ -56,8 +56,29 @@ private:
             const figure shown{entry.value, number(each.u95), number(each.low95),
                                number(each.high95), entry.unit};
             lines.push_back({label_of(entry.key), harmless(text_of(shown))});
+            if (is_alternative(entry.key))
+                settle_alternative(lines, entry);
         }
         return layout_.pairs(lines, indent);
+    }
+
+    /// "swing_at_least" stands in for "swing_db" where that is null, and else says nothing.
+    static bool is_alternative(std::string_view key) {
+        return key.ends_with("_at_least") || key.ends_with("_at_most");
+    }
+    static void settle_alternative(std::vector<text_layout::pair>& lines,
+                                   const sheet_entry& entry) {
+        const text_layout::pair own = lines.back();
+        lines.pop_back();
+        if (!std::isfinite(number_in(entry.value)))
+            return;
+        const std::size_t ending = own.label.rfind(" at ");
+        const std::string stem = own.label.substr(0, ending);
+        const std::string words = own.label.substr(ending + 1) + ' ' + own.value;
+        if (!lines.empty() && lines.back().label == stem)
+            lines.back().value = words;
+        else
+            lines.push_back({stem, words});
     }
 
     [[nodiscard]] std::string print(const sheet_group& group, std::size_t indent) const {
@@ -71,9 +92,11 @@ private:
     }
 
     [[nodiscard]] std::string print(const sheet_table& table, std::size_t indent) const {
-        std::string text = heading(label_of(table.key), indent);
         if (table.form == table_form::as_columns || table.rows == 0)
-            return text + fmt::format("{}{} records\n", std::string(indent + 2, ' '), table.rows);
+            return fmt::format("\n{}{}: {} records\n", std::string(indent, ' '),
+                               label_of(table.key),
+                               table.rows == 0 ? "no" : fmt::format("{}", table.rows));
+        std::string text = heading(label_of(table.key), indent);
         const std::size_t shown = std::min(table.rows, table_rows_);
         const std::string grid = layout_.grid(grid_of(table, shown), indent + 2);
         text += grid.empty() ? listed(table, shown, indent + 2) : grid;
@@ -96,8 +119,16 @@ private:
             return place ? number_in(table.columns[*place].at(row)) : not_measured;
         };
         const sheet_column& column = table.columns[group.value];
-        return harmless(text_of({column.at(row), number(group.u95), number(group.low95),
-                                 number(group.high95), with_unit ? column.unit : ""}));
+        std::string text = harmless(text_of({column.at(row), number(group.u95), number(group.low95),
+                                             number(group.high95), column.unit}));
+        if (!with_unit && unit_stands_in_heading(column) && text.ends_with(' ' + column.unit))
+            text.resize(text.size() - 1 - column.unit.size());
+        return text;
+    }
+
+    /// Hertz stay with their figures: prefixes differ from row to row.
+    [[nodiscard]] static bool unit_stands_in_heading(const sheet_column& column) {
+        return !column.unit.empty() && column.unit != "Hz";
     }
 
     /// Headings with units, then the rows; for a wide screen.
@@ -107,8 +138,9 @@ private:
         for (const value_group& each : groups) {
             const sheet_column& column = table.columns[each.value];
             const std::string label = label_of(column.key);
-            grid[0].push_back(column.unit.empty() ? label
-                                                  : fmt::format("{} ({})", label, column.unit));
+            grid[0].push_back(unit_stands_in_heading(column)
+                                  ? fmt::format("{} ({})", label, column.unit)
+                                  : label);
         }
         for (std::size_t row = 0; row < rows; ++row) {
             strings& line = grid.emplace_back();

@@ -46,21 +46,37 @@ std::string with_unit(std::string text, std::string_view unit) {
     return unit.empty() ? text : fmt::format("{} {}", text, unit);
 }
 
+bool is_decibel(std::string_view unit) {
+    return lower_case(unit).starts_with("db");
+}
+
+/// Nobody reads decibels finer than thousandths.
+int decimals_shown(double u95, std::string_view unit) {
+    return is_decibel(unit) ? std::min(decimals_for(u95), 3) : decimals_for(u95);
+}
+
+std::string plus_minus(double value, double u95, std::string_view unit) {
+    const int decimals = decimals_shown(u95, unit);
+    const double last_digit = std::pow(10.0, -decimals);
+    return with_unit(fmt::format("{} +/- {}", fixed(value, decimals),
+                                 fixed(std::max(u95, last_digit), decimals)),
+                     unit);
+}
+
 std::string number_text(const figure& shown, double value) {
-    if (shown.u95 > 0.0 && std::isfinite(shown.u95)) {
-        const int decimals = decimals_for(shown.u95);
-        return with_unit(
-            fmt::format("{} +/- {}", fixed(value, decimals), fixed(shown.u95, decimals)),
-            shown.unit);
-    }
+    constexpr double hardly_skewed = 0.1; // of the half-width
+    if (shown.u95 > 0.0 && std::isfinite(shown.u95))
+        return plus_minus(value, shown.u95, shown.unit);
     const double half_width = 0.5 * (shown.high95 - shown.low95);
-    if (half_width > 0.0 && std::isfinite(half_width)) {
-        const int decimals = decimals_for(half_width);
-        return with_unit(fmt::format("{} ({} to {})", fixed(value, decimals),
-                                     fixed(shown.low95, decimals), fixed(shown.high95, decimals)),
-                         shown.unit);
-    }
-    return plain_number(value, shown.unit);
+    if (!(half_width > 0.0 && std::isfinite(half_width)))
+        return plain_number(value, shown.unit);
+    const double middle = 0.5 * (shown.high95 + shown.low95);
+    if (std::abs(value - middle) < hardly_skewed * half_width)
+        return plus_minus(value, half_width, shown.unit);
+    const int decimals = decimals_shown(half_width, shown.unit);
+    return with_unit(fmt::format("{} ({} to {})", fixed(value, decimals),
+                                 fixed(shown.low95, decimals), fixed(shown.high95, decimals)),
+                     shown.unit);
 }
 
 std::string missing_text(const figure& shown) {
@@ -121,16 +137,16 @@ std::string text_of(const figure& shown) {
 }
 
 std::string plain_number(double value, std::string_view unit) {
-    if (unit == "Hz")
-        return format_hz(value, 9);
-    if (lower_case(unit).starts_with("db"))
+    if (unit == "Hz") // carriers to the hertz, tones and widths to hundredths
+        return format_hz(value, std::abs(value) < 1e6 ? 7 : 10);
+    if (is_decibel(unit))
         return with_unit(fixed(value, 2), unit);
-    return with_unit(fmt::format("{:.6g}", value == 0.0 ? 0.0 : value), unit);
+    return with_unit(fmt::format("{:.{}g}", value == 0.0 ? 0.0 : value, unit == "%" ? 4 : 6), unit);
 }
 
 std::string time_text(double seconds) {
     if (std::abs(seconds) < 120.0)
-        return fmt::format("{:.4g} s", seconds == 0.0 ? 0.0 : seconds);
+        return fmt::format("{:.3g} s", seconds == 0.0 ? 0.0 : seconds);
     const long whole = std::lround(seconds);
     if (whole < 3600)
         return fmt::format("{:02}:{:02}", whole / 60, whole % 60);

@@ -25,8 +25,7 @@ struct value_group {
 struct figure {
     cell value;
     double u95 = not_measured, low95 = not_measured, high95 = not_measured;
-    std::string_view
-        unit; ///< shown behind the figure; empty: not shown, but digits() may still need it
+    std::string_view unit; ///< also tells how finely people read it
 };
 /// For people: two digits of the uncertainty, the value to the same place. "-23.41 +/- 0.03 dBFS",
 /// "-23.4 (-25.1 to -22.0) dBFS", "below -80.2 dBFS", "not measured".

@@ -31,7 +31,7 @@ TEST(TextReport, RoundsTheUncertaintyToTwoDigitsAndTheValueToTheSamePlace) {
     EXPECT_EQ(shown(30.123456, 12.6), "30 +/- 13 %");
     EXPECT_EQ(shown(1234.5, 126.0), "1230 +/- 130 %");
     EXPECT_EQ(shown(-0.0004, 0.12), "0.00 +/- 0.12 %");
-    EXPECT_EQ(shown(30.123456, not_measured), "30.1235 %");
+    EXPECT_EQ(shown(30.123456, not_measured), "30.12 %");
     EXPECT_EQ(shown(not_measured, not_measured), "not measured");
 }
 
@@ -47,11 +47,32 @@ TEST(TextReport, ShowsIntervalsThatAreNotSymmetricAndBounds) {
     EXPECT_NE(text.find("detector  -\n"), text.npos) << text;
 }
 
+TEST(TextReport, ShowsNearlySymmetricIntervalsShortAndNoDecibelsBeyondThousandths) {
+    sheet page;
+    page.add("max_dbfs", "dBFS", interval_estimate{-21.44628, -21.44686, -21.44570, not_measured});
+    page.add("carrier_hz", "Hz", cell{433919999.9876});
+    page.add("channel_width_hz", "Hz", cell{5999.99996});
+    const std::string text = summary_text({}, page, {});
+    EXPECT_NE(text.find("max            -21.446 +/- 0.001 dBFS\n"), text.npos) << text;
+    EXPECT_NE(text.find("carrier        433.92 MHz\n"), text.npos) << text;
+    EXPECT_NE(text.find("channel width  6 kHz\n"), text.npos) << text;
+}
+
+TEST(TextReport, LetsABoundStandInForAValueThatIsOnlyBounded) {
+    const auto swing = [](double value, double at_least) {
+        sheet page;
+        page.add("swing_db", "dB", cell{value}).add("swing_at_least", "dB", cell{at_least});
+        return summary_text({}, page, {});
+    };
+    EXPECT_EQ(swing(18.06, not_measured), "\nswing  18.06 dB\n");
+    EXPECT_EQ(swing(not_measured, 12.97), "\nswing  at least 12.97 dB\n");
+}
+
 TEST(TextReport, SaysWhatWasMeasuredAndDrawsTheLog) {
     const std::string text = summary_of(test::sample_result());
     for (const char* part :
          {"w\xC3\xA4lk.iq\n", "ci16_le, 2.4 MS/s, centre 145 MHz, from 2026-05-04T09:30:00Z, 1 s",
-          "carrier         145.001 MHz", "tone            1 kHz", "summary", "extrema",
+          "carrier         145.0010005 MHz", "tone            1 kHz", "summary", "extrema",
           "below -60.00", "tone (dBFS)\n", "v at most"})
         EXPECT_NE(text.find(part), text.npos) << part << "\n" << text;
 }
