@@ -80,15 +80,11 @@ bool note_set::has(note_code code) const noexcept {
 
 const std::vector<std::string>& general_cautions() {
     static const std::vector<std::string> cautions{
-        "Radio-frequency fields near a transmitting antenna can injure: learn and keep the safe "
-        "distance, or have the power lowered, before going close.",
-        "Roofs, masts and traffic can kill: climb only when trained and secured, and never watch a "
-        "reading while walking or driving.",
-        "Transmitters hold mains and high voltage, also for a while after they are switched off: "
-        "leave opened cabinets to qualified people.",
-        "Transmit only under a licence or permit; the licence and the local rules decide what is "
-        "allowed, not these figures.",
-        "These figures are measurements, not a certificate of safety or of compliance.",
+        "RF near a transmitting antenna can injure: keep the safe distance.",
+        "Climb only trained and secured; never watch readings while moving.",
+        "Transmitters hold mains and high voltage: leave them to the qualified.",
+        "The licence and the local rules decide what may be transmitted.",
+        "These are measurements, no certificate of safety or compliance.",
     };
     return cautions;
 }

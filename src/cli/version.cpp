@@ -23,7 +23,6 @@ constexpr inside libraries[] = {
     {"nlohmann-json", "MIT"},
     {"toml++", "MIT"},
     {"libcsv", "LGPL-2.1-or-later"},
-    {"date", "MIT"},
     {"fmt", "MIT"},
     {"CLI11", "BSD-3-Clause"},
 };

@@ -14,7 +14,7 @@ HOUSE = pathlib.Path(__file__).resolve().parents[2]
 # Which rooms may include what from outside; anything else but the standard library is refused everywhere.
 FENCES = {
     r"Eigen/|eigen3/|boost/|fftw3\.h|liquid/|hwy/": {"maths"},
-    r"toml\+\+/|date/|csv\.h": {"base"},
+    r"toml\+\+/|csv\.h": {"base"},
     r"nlohmann/|sndfile\.h": {"recording", "report"},
     r"archive(_entry)?\.h|openssl/": {"recording"},
     r"CLI/": {"cli"},
