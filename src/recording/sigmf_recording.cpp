@@ -188,6 +188,7 @@ std::unique_ptr<block_source> open_sigmf(const recording_request& request, found
     frame_storage storage;
     for (const std::size_t origin : apply(request, std::move(stated), facts))
         storage.origins.push_back(found.data.offset + layout.stretches[origin].header_bytes);
+    note_missing_samples(facts);
     if (request.verify)
         facts.sha512 = verified_hash(found);
     return make_file_source(std::move(facts), std::move(found.file), std::move(storage));

@@ -146,6 +146,25 @@ void note_odd_tail(note_set& notes, std::int64_t bytes, std::size_t frame_bytes)
                "check the format and that the recording was copied whole"});
 }
 
+void note_missing_samples(stream_facts& facts) {
+    sample_index missing = 0;
+    std::size_t gaps = 0;
+    for (std::size_t k = 1; k < facts.stretches.size(); ++k) {
+        const stretch_facts& before = facts.stretches[k - 1];
+        const sample_index gap =
+            facts.stretches[k].position - before.position - before.count.value_or(0);
+        missing += gap;
+        gaps += gap > 0 ? 1U : 0U;
+    }
+    if (gaps == 0)
+        return;
+    facts.notes.add({note_code::samples_missing, severity::warning,
+                     fmt::format("{} samples ({:.3g} s) are missing in {} {}", missing,
+                                 static_cast<double>(missing) / facts.sample_rate_hz, gaps,
+                                 gaps == 1 ? "gap" : "gaps"),
+                     "no record spans a gap; record to a faster disk, or at a lower rate"});
+}
+
 double rate_to_use(const recording_request& request, std::optional<double> stated_hz,
                    const std::string& name) {
     if (!request.rate_hz && !stated_hz)

@@ -53,5 +53,7 @@ struct stated_facts {
                                  const std::string& name);
 
 void note_odd_tail(note_set&, std::int64_t bytes, std::size_t frame_bytes);
+/// Raises samples-missing where the stretches that are left have time between them.
+void note_missing_samples(stream_facts&);
 
 } // namespace tonewalk

@@ -85,6 +85,7 @@ write(data(800))
     EXPECT_EQ(made->stretches()[1].position, 1000);
     EXPECT_EQ(made->facts().duration_s(), 0.8);
     EXPECT_EQ(made->facts().span_s(), 1.3);
+    EXPECT_TRUE(made->facts().notes.has(note_code::samples_missing));
     const auto all = drain(*made->source, 64, 16); // also: no lead across the gap
     EXPECT_EQ(all.samples, numbered(0, 800));
     for (const auto& block : all.blocks)
@@ -103,6 +104,7 @@ meta('x', 'cu8', [{'core:sample_start': 0, 'core:frequency': 1e6},
 write(data(600))
 )");
     ASSERT_EQ(made->stretches().size(), 3U);
+    EXPECT_FALSE(made->facts().notes.has(note_code::samples_missing));
     EXPECT_EQ(made->stretches()[0].count, 400);
     EXPECT_EQ(made->stretches()[1].centre_hz, 2e6);
     EXPECT_FALSE(made->stretches()[2].centre_hz) << "values do not carry over (SIG-8)";
