@@ -39,9 +39,12 @@ sample_index decimator::begin(sample_index first_input) {
 }
 
 void decimator::add(std::span<const cf32> in, std::vector<cf32>& out) {
-    for (const cf32 z : in) {
-        real_.push_back(z.real());
-        imaginary_.push_back(z.imag());
+    const std::size_t held = real_.size();
+    real_.resize(held + in.size());
+    imaginary_.resize(held + in.size());
+    for (std::size_t n = 0; n < in.size(); ++n) {
+        real_[held + n] = in[n].real();
+        imaginary_[held + n] = in[n].imag();
     }
     produce(out);
 }

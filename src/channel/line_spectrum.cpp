@@ -6,67 +6,70 @@
 #include <cmath>
 #include <numbers>
 
-#include "tonewalk/maths/fft.hpp"
 #include "tonewalk/maths/quantile.hpp"
+#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
 
 constexpr std::size_t most_noise_run = 256;
 constexpr std::size_t lobe_bins = 4;
+constexpr double least_power = 1e-30; // of a noise bin: keeps silence from dividing by zero
+
+double median_of_three(double a, double b, double c) {
+    return std::max(std::min(a, b), std::min(std::max(a, b), c));
+}
 
 } // namespace
 
 line_spectrum::line_spectrum(std::size_t size, double rate_hz)
-    : rate_hz_{rate_hz}, window_{blackman_harris_window(size)}, power_(size, 0.0) {
-    noise_bins_ = window_.noise_bandwidth_bins();
+    : rate_hz_{rate_hz}, window_(size), power_(size, 0.0), transform_{size} {
+    const window shape = blackman_harris_window(size);
+    noise_bins_ = shape.noise_bandwidth_bins();
+    const double scale = 1.0 / (shape.coherent_gain() * static_cast<double>(size));
+    std::transform(shape.values().begin(), shape.values().end(), window_.begin(),
+                   [scale](double w) { return static_cast<float>(w * scale); });
 }
 
 void line_spectrum::add(std::span<const cf32> segment) {
-    const std::size_t size = power_.size();
+    const std::size_t size = power_.size(), half = size / 2;
     assert(segment.size() == size);
-    static thread_local std::unique_ptr<fft> transform;
-    if (!transform || transform->size() != size) {
-        transform = std::make_unique<fft>(size);
-    }
-    const std::span<cf32> in = transform->input();
-    const double scale = 1.0 / (window_.coherent_gain() * static_cast<double>(size));
+    const std::span<cf32> in = transform_->input();
     for (std::size_t n = 0; n < size; ++n) {
-        in[n] = segment[n] * static_cast<float>(window_.values()[n] * scale);
+        in[n] = {segment[n].real() * window_[n], segment[n].imag() * window_[n]};
     }
-    transform->run();
-    const std::span<const cf32> out = transform->output();
-    for (std::size_t k = 0; k < size; ++k) {
-        const std::size_t place = (k + size / 2) % size;
-        power_[place] += static_cast<double>(std::norm(out[k]));
+    transform_->run();
+    const std::span<const cf32> out = transform_->output();
+    for (std::size_t k = 0; k < size; ++k) { // the negative frequencies first
+        const cf32 z = out[k < half ? k + size - half : k - half];
+        const double re = static_cast<double>(z.real()), im = static_cast<double>(z.imag());
+        power_[k] += re * re + im * im;
     }
     ++segments_;
 }
 
 void line_spectrum::finish() {
+    transform_.reset();
+    window_ = {};
+    const double segments = static_cast<double>(std::max<std::size_t>(1, segments_));
     for (double& p : power_) {
-        p /= static_cast<double>(std::max<std::size_t>(1, segments_));
+        p /= segments;
     }
     noise_run_ = std::clamp<std::size_t>(power_.size() / 8, 8, most_noise_run);
     std::vector<double> medians;
     for (std::size_t first = 0; first < power_.size(); first += noise_run_) {
-        const auto begin = power_.begin() + static_cast<std::ptrdiff_t>(first);
-        const auto end = power_.begin() +
-                         static_cast<std::ptrdiff_t>(std::min(first + noise_run_, power_.size()));
-        medians.push_back(median({begin, end}));
+        const std::size_t count = std::min(noise_run_, power_.size() - first);
+        const std::span<const double> run{power_.data() + first, count};
+        medians.push_back(median({run.begin(), run.end()}));
     }
     // One segment's powers are exponential, whose median is ln 2 of the mean; many segments' come
     // to meet it.
-    const double share =
-        1.0 - (1.0 - std::numbers::ln2) / static_cast<double>(std::max<std::size_t>(1, segments_));
+    const double share = 1.0 - (1.0 - std::numbers::ln2) / segments;
     noise_.resize(medians.size());
-    for (std::size_t k = 0; k < medians.size();
-         ++k) { // the middle of three: a crowd of lines lifts one run
-        const double left = medians[k > 0 ? k - 1 : k],
-                     right = medians[std::min(k + 1, medians.size() - 1)];
-        const double middle =
-            std::max(std::min(left, right), std::min(std::max(left, right), medians[k]));
-        noise_[k] = std::max(middle / share, 1e-30);
+    for (std::size_t k = 0; k < medians.size(); ++k) { // a crowd of lines lifts one run: not three
+        const double left = medians[k > 0 ? k - 1 : k];
+        const double right = medians[std::min(k + 1, medians.size() - 1)];
+        noise_[k] = std::max(median_of_three(left, medians[k], right) / share, least_power);
     }
 }
 
@@ -79,8 +82,8 @@ std::size_t line_spectrum::bin_of(double hz) const noexcept {
     return static_cast<std::size_t>(std::clamp(bin, 0.0, static_cast<double>(power_.size() - 1)));
 }
 
-bool line_spectrum::is_line(std::size_t bin, double ratio) const noexcept {
-    if (power_[bin] < ratio * noise(bin)) {
+bool line_spectrum::is_line(std::size_t bin) const noexcept {
+    if (power_[bin] < line_ratio * noise(bin)) {
         return false;
     }
     const std::size_t first = bin > lobe_bins ? bin - lobe_bins : 0;
@@ -93,15 +96,26 @@ bool line_spectrum::is_line(std::size_t bin, double ratio) const noexcept {
     return true;
 }
 
-double line_spectrum::peak_hz(std::size_t bin) const noexcept {
+std::optional<std::size_t> line_spectrum::strongest(double low_hz, double high_hz) const noexcept {
+    std::optional<std::size_t> best;
+    for (std::size_t k = bin_of(low_hz), last = bin_of(high_hz); k <= last; ++k) {
+        if ((!best || power_[k] > power_[*best]) && is_line(k)) {
+            best = k;
+        }
+    }
+    return best;
+}
+
+line_spectrum::peak line_spectrum::peak_at(std::size_t bin) const noexcept {
+    const double at = static_cast<double>(bin);
     if (bin == 0 || bin + 1 >= power_.size()) {
-        return hz_of(static_cast<double>(bin));
+        return {hz_of(at), power_[bin]};
     }
     const double left = std::log(power_[bin - 1] + 1e-300), middle = std::log(power_[bin] + 1e-300),
                  right = std::log(power_[bin + 1] + 1e-300);
     const double bend = left - 2.0 * middle + right;
     const double shift = bend < 0.0 ? std::clamp(0.5 * (left - right) / bend, -0.5, 0.5) : 0.0;
-    return hz_of(static_cast<double>(bin) + shift);
+    return {hz_of(at + shift), std::exp(middle - 0.25 * (left - right) * shift)};
 }
 
 } // namespace tonewalk

@@ -412,7 +412,7 @@ TEST(SignalSearch, AnAutomaticWidthShrinksAndAGivenOneDoesNot) {
     EXPECT_NEAR(search(tight, {.width_hz = 5390.0}).width_hz, 5390.0, 1e-9);
     const auto failure = caught([&] { search(tight, {.width_hz = 5410.0}); });
     EXPECT_EQ(failure.exit_status, 3);
-    EXPECT_TRUE(failure.says("--width 5.41k"));
+    EXPECT_TRUE(failure.says("--width 5410"));
     EXPECT_TRUE(failure.says("5.4 kHz"));
 }
 

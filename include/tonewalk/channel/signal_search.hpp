@@ -30,7 +30,7 @@ struct found_carrier {
     double level_dbfs = not_measured;
     double carrier_to_noise_density_dbhz = not_measured;
     std::vector<found_tone> tones;     ///< the chosen one first; empty: none steady
-    bool modulated_unsteadily = false; ///< mirrored lines, but none steady for 1 s
+    bool modulated_unsteadily = false; ///< in step with the carrier, but not by a steady tone
 };
 
 struct found_signal {
