@@ -212,11 +212,11 @@ void take_tone(found_signal& f, const found_carrier& chosen, const search_reques
         return;
     }
     if (chosen.modulated_unsteadily) {
-        f.notes.add({note_code::no_steady_tone, severity::info,
+        f.notes.add({note_code::no_steady_tone, severity::warning,
                      "the carrier is modulated, but no tone is steady for 1 s: speech or programme",
                      "levels are the carrier's; give --tone where there is one"});
     } else {
-        f.notes.add({note_code::no_tone, severity::info, "no tone was found on the carrier",
+        f.notes.add({note_code::no_tone, severity::warning, "no tone was found on the carrier",
                      "levels are the carrier's; give --tone where there is one"});
     }
 }
