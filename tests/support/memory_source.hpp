@@ -3,11 +3,13 @@
 
 #include <algorithm>
 #include <atomic>
+#include <chrono>
 #include <cstring>
 #include <functional>
 #include <optional>
 #include <span>
 #include <string_view>
+#include <thread>
 #include <utility>
 #include <vector>
 
@@ -40,8 +42,11 @@ public:
     memory_source(stream_facts facts, std::vector<std::byte> frames)
         : facts_{std::move(facts)}, frames_{std::move(frames)} {}
 
-    /// Filling a block that holds this stored sample throws error{unreadable}.
-    void fail_at(sample_index index) noexcept { fails_at_ = index; }
+    /// Filling a block that holds this stored sample throws error{unreadable}, after a while.
+    void fail_at(sample_index index, std::chrono::milliseconds after = {}) noexcept {
+        fails_at_ = index;
+        fails_after_ = after;
+    }
     /// Called when the block that holds this stored sample is claimed.
     void on_claim(sample_index index, std::function<void()> action) {
         action_at_ = index;
@@ -86,6 +91,7 @@ public:
 
     void fill(raw_block& block) override {
         if (holds(block, fails_at_)) {
+            std::this_thread::sleep_for(fails_after_);
             throw error{fault::unreadable, "cannot be read", facts_.name, "read it again"};
         }
         const auto from = static_cast<std::size_t>(block.first) - block.lead;
@@ -106,6 +112,7 @@ private:
     std::size_t stretch_ = 0;
     sample_index done_ = 0; // of the stretch
     sample_index fails_at_ = -1, action_at_ = -1;
+    std::chrono::milliseconds fails_after_{};
     std::function<void()> action_;
     std::atomic<bool> woken_ = false;
 };

@@ -28,9 +28,12 @@ struct pass_tuning {
     std::size_t block_bytes = 256 * 1024; ///< 64 KiB to 1 MiB
 };
 
-/// Reads the recording once. Workers run the front end on blocks in any order; chains and the raw
-/// watch get them in block order. Memory: a ring of slots, at most 8 MiB together, at most 16
-/// workers. A stop request wakes a blocked read; claimed blocks drain, chains finish.
+/// Reads the recording once. Workers run the front end on blocks in any order; chains (one for each
+/// of the front end's channels) and the raw watch get them in block order, one thread at a time.
+/// Memory: a ring of slots, at most 8 MiB together, at most 16 workers. A stop request wakes a
+/// blocked read; what was claimed drains, and a stretch that is cut off ends as if the recording
+/// ended there. The same where the input fails. Then the chains finish. Throws what a chain throws;
+/// chains are left unfinished then.
 pass_report run_pass(block_source&, const front_end&, std::span<chain* const>, raw_watch&,
                      const run_control&, const pass_tuning& = {});
 
