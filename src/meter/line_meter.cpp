@@ -51,8 +51,9 @@ struct pending_record {
 std::vector<double> hann_weights(std::size_t size) {
     const window hann = hann_window(size);
     std::vector<double> w(hann.values().begin(), hann.values().end());
+    const double sum = hann.coherent_gain() * static_cast<double>(size);
     for (double& each : w) {
-        each /= hann.coherent_gain() * static_cast<double>(size);
+        each /= sum;
     }
     return w;
 }
@@ -75,6 +76,7 @@ struct line_meter::state {
     }
     void check_window() const;
     void measure_complete();
+    void forget_before(sample_index first);
     void measure(sample_index first);
     void null_record(double time_s, std::uint32_t flags);
     [[nodiscard]] double own_frequency(const line_moments&) const;
@@ -170,15 +172,17 @@ void line_meter::state::measure_complete() {
             measure(first);
         }
         ++next;
-        const sample_index needless = set.grid.first(next) - history_first;
-        if (needless > static_cast<sample_index>(4 * samples) ||
-            needless == static_cast<sample_index>(history.size())) {
-            history.erase(history.begin(),
-                          history.begin() +
-                              std::min<std::ptrdiff_t>(
-                                  needless, static_cast<std::ptrdiff_t>(history.size())));
-            history_first += needless;
-        }
+        forget_before(set.grid.first(next));
+    }
+}
+
+/// Drops samples that no record needs any more, seldom, so that few are moved.
+void line_meter::state::forget_before(sample_index first) {
+    const auto held = static_cast<sample_index>(history.size());
+    const sample_index needless = std::min(first - history_first, held);
+    if (needless > static_cast<sample_index>(4 * samples) || needless == held) {
+        history.erase(history.begin(), history.begin() + needless);
+        history_first += needless;
     }
 }
 
@@ -277,7 +281,7 @@ void line_meter::state::settle(bool stretch_over) {
         settled.push_back(std::move(pending.front()));
         pending.pop_front();
         settled.back().carrier = settled.back().upper = settled.back().lower = line_moments{};
-        while (latest_s - settled.front().time_s > 2.0 * neighbour_reach_s) {
+        while (!settled.empty() && latest_s - settled.front().time_s > 2.0 * neighbour_reach_s) {
             settled.pop_front();
         }
     }
