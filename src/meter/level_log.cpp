@@ -96,6 +96,29 @@ sheet_table log_table(const level_log& log) {
     return t;
 }
 
+/// Over the records that tell the value.
+template <class Value>
+double median_over(const level_log& log, Value value) {
+    std::vector<double> values;
+    for (const level_record& r : log.records) {
+        if (const double x = value(r); !std::isnan(x)) {
+            values.push_back(x);
+        }
+    }
+    return median(std::move(values));
+}
+
+void add_medians(sheet& s, const level_log& log) {
+    s.add("carrier_median_dbfs", "dBFS",
+          median_over(log, [](const level_record& r) { return r.carrier_dbfs.value; }));
+    s.add("tone_median_dbfs", "dBFS",
+          median_over(log, [](const level_record& r) { return r.tone_dbfs.value; }));
+    s.add("depth_median_percent", "%",
+          median_over(log, [](const level_record& r) { return r.depth_percent.value; }));
+    const double noise = median_over(log, [](const level_record& r) { return r.noise_power; });
+    s.add("noise_median_dbfs_hz", "dBFS/Hz", 10.0 * std::log10(noise / log.noise_bandwidth_hz()));
+}
+
 /// Of each run of records the lowest and the highest, so that thinning hides no null.
 curve thinned(const level_log& log, quantity which) {
     curve c;
@@ -192,6 +215,7 @@ sheet describe(const level_log& log) {
     s.add("interval_s", "s", log.every_s);
     s.add("window_s", "s", log.window_s);
     s.add("noise_bandwidth_hz", "Hz", log.noise_bandwidth_hz());
+    add_medians(s, log);
     s.add(log_table(log));
     s.add(thinned(log, quantity::carrier));
     if (log.has_tone()) {

@@ -68,21 +68,21 @@ void note_depth_varies(level_log& log) {
     const double chi_square = squares - sum * sum / weight;
     const double degrees = (n - 1.0) / overlap_spread;
     if (chi_square / overlap_spread > chi_square_quantile(0.999, degrees)) {
-        log.doubts.add(
-            {note_code::depth_varies, severity::warning,
-             fmt::format(
-                 "tone and carrier do not fade alike: the depth scatters {:.1f} times as much "
-                 "as noise explains",
-                 std::sqrt(chi_square / (n - 1.0))),
-             "look for a second signal, selective fading or a changing transmitter; the tone's "
-             "level "
-             "then says more of the audio than of the field"});
+        log.doubts.add({note_code::depth_varies, severity::warning,
+                        fmt::format("tone and carrier do not fade alike: the depth "
+                                    "scatters {:.1f} times as much "
+                                    "as noise explains",
+                                    std::sqrt(chi_square / (n - 1.0))),
+                        "look for a second signal, selective fading or a changing "
+                        "transmitter; the tone's "
+                        "level "
+                        "then says more of the audio than of the field"});
     }
 }
 
 /// Carrier and noise of the records that told both, in decibels.
 struct level_pair {
-    double time_s = 0.0, carrier_db = 0.0, noise_db = 0.0;
+    double time_s = 0.0, carrier_db = 0.0, carrier_sigma_db = 0.0, noise_db = 0.0;
     std::uint32_t stretch = 0;
 };
 
@@ -90,8 +90,9 @@ std::vector<level_pair> pairs_of(const level_log& log) {
     std::vector<level_pair> pairs;
     for (const level_record& r : log.records) {
         if (!std::isnan(r.carrier_dbfs.value) && r.noise_power > 0.0) {
-            pairs.push_back(
-                {r.time_s, r.carrier_dbfs.value, 10.0 * std::log10(r.noise_power), r.stretch});
+            const double relative = r.carrier.sigma / std::sqrt(r.carrier.power);
+            pairs.push_back({r.time_s, r.carrier_dbfs.value, 20.0 / std::log(10.0) * relative,
+                             10.0 * std::log10(r.noise_power), r.stretch});
         }
     }
     return pairs;
@@ -101,8 +102,8 @@ struct mean_and_error {
     double mean = 0.0, error = 0.0;
 };
 
-/// Mean of the noise over [first, past) and its standard error from the scatter, neighbours
-/// overlapping.
+/// Mean of the noise over [first, past) and its standard error from the
+/// scatter, neighbours overlapping.
 mean_and_error noise_mean(const std::vector<level_pair>& pairs, std::size_t first,
                           std::size_t past) {
     const auto n = static_cast<double>(past - first);
@@ -115,8 +116,35 @@ mean_and_error noise_mean(const std::vector<level_pair>& pairs, std::size_t firs
     return {sum / n, std::sqrt(variance / n * overlap_spread * n / std::max(1.0, n - 1.0))};
 }
 
-/// A step of the receiver's gain moves carrier and noise together by the same amount within one
-/// window.
+/// Between the records `before` and `after`: what the carrier steps by, and the
+/// noise, 10 s either side.
+struct step_pair {
+    mean_and_error carrier, noise;
+    [[nodiscard]] bool are_alike() const {
+        constexpr double least_difference_db = 0.15;
+        const double doubt = doubt_sigmas * std::hypot(carrier.error, noise.error);
+        return std::abs(carrier.mean - noise.mean) < std::max(least_difference_db, doubt) &&
+               std::abs(noise.mean) > doubt_sigmas * noise.error;
+    }
+    /// The one step that both show, weighted by what each knows.
+    [[nodiscard]] double both() const {
+        const double c = carrier.error * carrier.error, n = noise.error * noise.error;
+        return (carrier.mean * n + noise.mean * c) / (c + n);
+    }
+};
+
+step_pair step_between(const std::vector<level_pair>& pairs, std::size_t before, std::size_t after,
+                       std::size_t side) {
+    const std::size_t first = before + 1 > side ? before + 1 - side : 0;
+    const mean_and_error left = noise_mean(pairs, first, before + 1);
+    const mean_and_error right = noise_mean(pairs, after, std::min(pairs.size(), after + side));
+    return {{pairs[after].carrier_db - pairs[before].carrier_db,
+             std::hypot(pairs[after].carrier_sigma_db, pairs[before].carrier_sigma_db)},
+            {right.mean - left.mean, std::hypot(left.error, right.error)}};
+}
+
+/// A step of the receiver's gain moves carrier and noise together by the same
+/// amount within one window.
 void note_gain_step(level_log& log, const std::vector<level_pair>& pairs) {
     const auto side = static_cast<std::size_t>(std::max(4.0, step_side_s / log.every_s));
     const auto across = static_cast<std::size_t>(std::ceil(log.window_s / log.every_s)) + 1;
@@ -124,20 +152,15 @@ void note_gain_step(level_log& log, const std::vector<level_pair>& pairs) {
     double best_db = 0.0, best_s = 0.0;
     for (std::size_t k = least_side; k + across + least_side < pairs.size(); ++k) {
         const level_pair &before = pairs[k], &after = pairs[k + across];
-        const double carrier_step = after.carrier_db - before.carrier_db;
-        if (before.stretch != after.stretch || std::abs(carrier_step) < least_step_db * 0.9) {
+        const double carrier_step_db = std::abs(after.carrier_db - before.carrier_db);
+        if (before.stretch != after.stretch || carrier_step_db < least_step_db / 2.0) {
             continue;
         }
-        const std::size_t first = k + 1 > side ? k + 1 - side : 0;
-        const mean_and_error left = noise_mean(pairs, first, k + 1);
-        const mean_and_error right =
-            noise_mean(pairs, k + across, std::min(pairs.size(), k + across + side));
-        const double step = right.mean - left.mean;
-        const double error = std::hypot(left.error, right.error);
-        const bool real = std::abs(step) >= least_step_db && std::abs(step) > doubt_sigmas * error;
-        const bool alike = std::abs(step - carrier_step) < std::max(0.15, doubt_sigmas * error);
-        if (real && alike && std::abs(step) > std::abs(best_db)) {
-            best_db = step;
+        const step_pair step = step_between(pairs, k, k + across, side);
+        const double step_db = step.both();
+        if (std::abs(step_db) >= least_step_db && step.are_alike() &&
+            std::abs(step_db) > std::abs(best_db)) {
+            best_db = step_db;
             best_s = 0.5 * (before.time_s + after.time_s);
         }
     }
@@ -145,11 +168,13 @@ void note_gain_step(level_log& log, const std::vector<level_pair>& pairs) {
         log.doubts.add({note_code::gain_step, severity::warning,
                         fmt::format("carrier and noise step together by {:+.2f} dB at {:.1f} s",
                                     best_db, best_s),
-                        "the receiver's gain changed; levels before and after do not compare"});
+                        "the receiver's gain changed; levels before and after do not "
+                        "compare"});
     }
 }
 
-/// Gain control turns the noise up when the carrier fades: noise falls as the carrier rises.
+/// Gain control turns the noise up when the carrier fades: noise falls as the
+/// carrier rises.
 void note_gain_control(level_log& log, const std::vector<level_pair>& pairs) {
     constexpr std::size_t least_records = 30;
     if (pairs.size() < least_records || log.doubts.has(note_code::gain_step)) {
@@ -183,7 +208,8 @@ void note_gain_control(level_log& log, const std::vector<level_pair>& pairs) {
             {note_code::agc_suspected, severity::warning,
              fmt::format("the noise rises by {:.1f} dB as the carrier falls by {:.1f} dB", moved,
                          range),
-             "switch the receiver's gain control off and record again; fades are deeper than "
+             "switch the receiver's gain control off and record again; fades are "
+             "deeper than "
              "shown"});
     }
 }
@@ -198,7 +224,8 @@ void add_level_notes(level_log& log, quantity used) {
               "bounds are given where it does not; a longer --window reaches lower");
     if (log.has_tone()) {
         note_weak(log, flag_weak_tone, note_code::weak_tone, "tone",
-                  "bounds are given where it does not; a longer --window reaches lower, or use "
+                  "bounds are given where it does not; a longer --window reaches "
+                  "lower, or use "
                   "--quantity carrier");
     }
     const std::size_t limited =
@@ -215,16 +242,17 @@ void add_level_notes(level_log& log, quantity used) {
             {note_code::segments_skipped, severity::warning,
              fmt::format("{} records lie in segments whose band does not hold the channel",
                          skipped),
-             "they are null; give --carrier without a sign to follow it through other segments"});
+             "they are null; give --carrier without a sign to follow it through "
+             "other segments"});
     }
     const std::size_t suppressed = flagged(log, flag_envelope_suppressed);
     if (suppressed > 0) {
-        log.doubts.add(
-            {note_code::envelope_suppressed, severity::warning,
-             fmt::format(
-                 "in {} of {} records noise makes an envelope read the tone 0.1 dB or more low",
-                 suppressed, log.records.size()),
-             "nulls look deeper than they are; use tone_dbfs, or --detector synchronous"});
+        log.doubts.add({note_code::envelope_suppressed, severity::warning,
+                        fmt::format("in {} of {} records noise makes an envelope "
+                                    "read the tone 0.1 dB or more low",
+                                    suppressed, log.records.size()),
+                        "nulls look deeper than they are; use tone_dbfs, or "
+                        "--detector synchronous"});
     }
     if (log.has_tone()) {
         note_depth_varies(log);

@@ -60,6 +60,10 @@ inline sheet sample_result() {
     sheet result;
     result.add("interval_s", "s", cell{0.1}).add("window_s", "s", cell{0.2});
     result.add("noise_bandwidth_hz", "Hz", cell{7.5});
+    result.add("carrier_median_dbfs", "dBFS", cell{-10.0});
+    result.add("tone_median_dbfs", "dBFS", cell{-20.5});
+    result.add("depth_median_percent", "%", cell{30.0});
+    result.add("noise_median_dbfs_hz", "dBFS/Hz", cell{not_measured});
     result.add("summary", std::move(summary)).add(std::move(extrema)).add(std::move(log));
     result.add(
         curve{"spectrum", "line", "Hz", "dBFS", "", {-1.0, 0.0, 1.0}, {-80.0, nothing, -80.5}, {}});

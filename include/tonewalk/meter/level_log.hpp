@@ -82,8 +82,9 @@ struct level_summary {
 [[nodiscard]] level_summary summarise(const level_log&, quantity);
 [[nodiscard]] sheet describe(const level_summary&);
 
-/// interval_s, window_s, noise_bandwidth_hz and the table "log", whose columns look at the log; the
-/// curves "log" (thinned to some 2000 points, extremes kept) and "strip".
+/// interval_s, window_s, noise_bandwidth_hz, the medians over detected records and the table "log",
+/// whose columns look at the log; the curves "log" (thinned to some 2000 points, extremes kept) and
+/// "strip".
 [[nodiscard]] sheet describe(const level_log&);
 
 } // namespace tonewalk
