@@ -20,6 +20,13 @@ const double peak_reach = decibel::from_db(-1.0).power_ratio();
 const double null_reach = decibel::from_db(6.0).power_ratio();
 constexpr double least_null_windows = 6.0;
 constexpr std::size_t least_fit_records = 5;
+// Half a Hann window's mean square time, in windows: a wave whose frequency is off the curve by f
+// loses (2 pi f T)^2 times this of its amplitude.
+constexpr double hann_smear = 0.022; // 0.01634, and a third for uneven fits
+// A standing wave is a sine's square in power, not a parabola: fitted over a rise R of a whole
+// swing S, its vertex is off by R^2/(35 S) with even points, R^2/(20 S) at the most as records
+// fall.
+constexpr double parabola_error = 1.0 / 20.0;
 
 /// One record as the walk sees it; undetected records have amplitude 0.
 struct step {
@@ -38,7 +45,13 @@ public:
     walk(std::vector<step> steps, double sigmas, const extrema_rule& rule, double window_s,
          quantity which)
         : steps_{std::move(steps)}, sigmas_{sigmas},
-          least_ratio_{rule.least_ratio}, window_s_{window_s}, which_{which} {}
+          least_ratio_{rule.least_ratio}, window_s_{window_s}, which_{which} {
+        lowest_ = steps_.empty() ? 0.0 : steps_.front().amplitude;
+        for (const step& s : steps_) {
+            highest_ = std::max(highest_, s.amplitude);
+            lowest_ = std::min(lowest_, s.amplitude);
+        }
+    }
     [[nodiscard]] std::vector<extremum> extrema() const;
 
 private:
@@ -56,9 +69,11 @@ private:
     void set_prominence(std::vector<extremum>&, const std::vector<turn>&) const;
     [[nodiscard]] double shown_db(std::size_t place) const noexcept;
     [[nodiscard]] std::size_t nearest_to(double time_s) const noexcept;
+    [[nodiscard]] double shape_error(const parabola_vertex&, std::size_t first,
+                                     std::size_t last) const noexcept;
 
     std::vector<step> steps_;
-    double sigmas_, least_ratio_, window_s_;
+    double sigmas_, least_ratio_, window_s_, highest_ = 0.0, lowest_ = 0.0;
     quantity which_;
 };
 
@@ -161,10 +176,11 @@ double amplitude_db(double power) {
     return decibel::from_power_ratio(power).db();
 }
 
-/// Level and interval from a fitted power.
-interval_estimate level_from(double power, double power_sigma) {
+/// Level and interval from a fitted power. `smear`: how far window and parabola may have moved its
+/// amplitude, relative.
+interval_estimate level_from(double power, double power_sigma, double smear) {
     interval_estimate level;
-    const double reach = 1.96 * power_sigma;
+    const double reach = 1.96 * power_sigma + 2.0 * smear * std::max(0.0, power);
     level.high95 = amplitude_db(std::max(power, 0.0) + reach);
     if (power <= 0.0) {
         return level;
@@ -176,6 +192,26 @@ interval_estimate level_from(double power, double power_sigma) {
     return level;
 }
 
+/// How far window and parabola may be off, relative in amplitude. Window: two waves A > B against
+/// each other, the curve on A's frequency; B fades in the window, which lifts a null by B (1 - H)
+/// and lowers a peak by as much. In terms of the parabola that is hann_smear T^2 bend / (2 A), A
+/// half the sum of highest and lowest amplitude.
+double walk::shape_error(const parabola_vertex& fit, std::size_t first,
+                         std::size_t last) const noexcept {
+    const double here = std::sqrt(std::max(fit.y, 0.0));
+    if (here <= 0.0) {
+        return 0.0;
+    }
+    const double other = fit.bend > 0.0 ? highest_ : 0.0; // a peak's null is 0 at the most
+    const double window =
+        hann_smear * window_s_ * window_s_ * std::abs(fit.bend) / ((here + other) * here);
+    const double reach_s =
+        std::max(fit.x - steps_[first].record->time_s, steps_[last].record->time_s - fit.x);
+    const double rise = 0.5 * std::abs(fit.bend) * reach_s * reach_s;
+    const double swing = std::max(rise, highest_ * highest_ - lowest_ * lowest_);
+    return window + 0.5 * parabola_error * rise * rise / (swing * fit.y);
+}
+
 extremum walk::placed_peak(std::size_t place) const {
     extremum e;
     e.kind = extremum_kind::peak;
@@ -183,8 +219,8 @@ extremum walk::placed_peak(std::size_t place) const {
     const auto fit = vertex(first, last);
     take_place(e, fit, first, last, place);
     const bool fitted = fit && fit->bend < 0.0 && fit->y > 0.0 && e.time_s == fit->x;
-    e.level_dbfs =
-        fitted ? level_from(fit->y, fit->y_sigma) : level_of(*steps_[place].record, which_);
+    e.level_dbfs = fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, first, last))
+                          : level_of(*steps_[place].record, which_);
     return e;
 }
 
@@ -232,7 +268,8 @@ extremum walk::placed_null(std::size_t place) const {
     take_place(e, fit, from, until, middle);
     const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x && !e.floor_limited;
     const interval_estimate& nearest = level_of(*steps_[nearest_to(e.time_s)].record, which_);
-    e.level_dbfs = fitted ? level_from(fit->y, fit->y_sigma) : nearest;
+    e.level_dbfs =
+        fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, from, until)) : nearest;
     e.floor_limited = e.floor_limited || std::isnan(e.level_dbfs.value);
     const double fitted_bottom =
         fitted ? std::max(fit->y, bottom.sigma * bottom.sigma) : bottom_power;

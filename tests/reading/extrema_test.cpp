@@ -121,6 +121,23 @@ TEST(NullDepth, HoldsForWindowsThatANullFillsSixTimes) {
     }
 }
 
+// Without noise only the window's own smear is left, and the interval holds it.
+TEST(NullDepth, IntervalHoldsTheWindowsSmear) {
+    for (const double swr : {3.0, 8.0, 20.0}) {
+        const two_waves waves{swr, 0.2 * (swr > 10.0 ? 250.0 : 90.0), 0.9};
+        const am_signal s = walk_through(waves, 80.0, 0.2, 21);
+        const level_log log = measure(s, 1.2 * waves.wavelength_s, {});
+        for (const extremum& e : find_extrema(log, quantity::carrier).found) {
+            const double truth_dbfs =
+                s.carrier_dbfs - (e.kind == extremum_kind::null ? 20.0 * std::log10(swr) : 0.0);
+            EXPECT_FALSE(e.floor_limited);
+            EXPECT_LE(e.level_dbfs.low95, truth_dbfs) << swr;
+            EXPECT_GE(e.level_dbfs.high95, truth_dbfs) << swr;
+            EXPECT_LT(e.level_dbfs.high95 - e.level_dbfs.low95, swr < 5.0 ? 0.6 : 0.1) << swr;
+        }
+    }
+}
+
 // A window that a null does not fill six times fills the null: said, and given as a bound that
 // holds.
 TEST(NullDepth, IsABoundWhereTheWindowFillsTheNull) {

@@ -10,8 +10,8 @@ namespace tonewalk {
 
 enum class sample_type { f32, f64, i32, i16, u32, u16, i8, u8 };
 
-/// How one sample of one lane is stored: SigMF's core:datatype grammar, by grammar and not by its loose
-/// schema pattern (ci16_le, cu8, rf64_be ...).
+/// How one sample of one lane is stored: SigMF's core:datatype grammar, by grammar and not by its
+/// loose schema pattern (ci16_le, cu8, rf64_be ...).
 struct sample_format {
     sample_type type = sample_type::i16;
     bool is_complex = true;

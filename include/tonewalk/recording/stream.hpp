@@ -18,42 +18,44 @@ namespace tonewalk {
 
 /// A gapless run of samples with one centre frequency.
 struct stretch_facts {
-    sample_index first = 0;             ///< index among the samples stored in the recording
-    std::optional<sample_index> count;  ///< unknown only for a pipe
-    sample_index position = 0;          ///< of its first sample from the recording's first, gaps included
+    sample_index first = 0;            ///< index among the samples stored in the recording
+    std::optional<sample_index> count; ///< unknown only for a pipe
+    sample_index position = 0; ///< of its first sample from the recording's first, gaps included
     std::optional<double> centre_hz;
 };
 
 /// What is known of a recording's samples, after the options that override it.
 struct stream_facts {
-    std::string name;                   ///< as the user gave it
-    sample_format format;               ///< of the bytes in raw_block
-    std::string format_name;            ///< of the recording: "ci16_le", "wav pcm24"
-    unsigned code_bits = 0;             ///< integer resolution in use (24 in an i32 container; else the type's)
-    unsigned lanes = 1, lane = 0;       ///< interleaved streams, and the one that is measured
+    std::string name;        ///< as the user gave it
+    sample_format format;    ///< of the bytes in raw_block
+    std::string format_name; ///< of the recording: "ci16_le", "wav pcm24"
+    unsigned code_bits = 0; ///< integer resolution in use (24 in an i32 container; else the type's)
+    unsigned lanes = 1, lane = 0; ///< interleaved streams, and the one that is measured
     bool swap_iq = false, inverted = false;
     double sample_rate_hz = 0.0;
-    std::optional<double> centre_hz;    ///< of the first stretch
-    std::optional<utc_time> start_utc;  ///< of the recording's first sample
+    std::optional<double> centre_hz;      ///< of the first stretch
+    std::optional<utc_time> start_utc;    ///< of the recording's first sample
     std::vector<stretch_facts> stretches; ///< at least one, ascending; only what is to be measured
     bool seekable = true;
-    std::string sha512;                 ///< hex; filled by --verify alone, else empty
-    note_set notes;                     ///< metadata-overridden, container-short, odd-tail, ...
+    std::string sha512; ///< hex; filled by --verify alone, else empty
+    note_set notes;     ///< metadata-overridden, container-short, odd-tail, ...
 
     [[nodiscard]] std::size_t frame_bytes() const noexcept { return format.sample_bytes() * lanes; }
-    [[nodiscard]] std::optional<sample_index> samples() const noexcept; ///< to be measured, all stretches
-    [[nodiscard]] double duration_s() const noexcept;  ///< samples / rate; 0 when unknown
-    [[nodiscard]] double span_s() const noexcept;      ///< first to last sample, gaps included
+    [[nodiscard]] std::optional<sample_index>
+    samples() const noexcept;                         ///< to be measured, all stretches
+    [[nodiscard]] double duration_s() const noexcept; ///< samples / rate; 0 when unknown
+    [[nodiscard]] double span_s() const noexcept;     ///< first to last sample, gaps included
 };
 
-/// Frames (all lanes) of one stretch as stored: `lead` samples of history, then `count`. History is never
-/// taken from another stretch: at a stretch's start lead is 0 or short, what is missing counts as zeros.
+/// Frames (all lanes) of one stretch as stored: `lead` samples of history, then `count`. History is
+/// never taken from another stretch: at a stretch's start lead is 0 or short, what is missing
+/// counts as zeros.
 struct raw_block {
     std::span<const std::byte> bytes;
-    sample_index first = 0;      ///< index of the first sample after the lead, among the stored ones
+    sample_index first = 0; ///< index of the first sample after the lead, among the stored ones
     std::size_t lead = 0, count = 0;
-    std::uint32_t stretch = 0;   ///< index in stream_facts::stretches
-    bool ends_stretch = false;   ///< for a pipe, true in the last block, which may be empty
+    std::uint32_t stretch = 0; ///< index in stream_facts::stretches
+    bool ends_stretch = false; ///< for a pipe, true in the last block, which may be empty
 };
 
 /// Where samples come from: file, archive member, container, pipe.
@@ -63,20 +65,21 @@ public:
     [[nodiscard]] virtual const stream_facts& facts() const noexcept = 0;
 
     /// Up to `samples` frames from the start of what is to be measured; kept until the source is
-    /// destroyed, and blocks still start at sample 0. A pipe reads them once and replays them. Never past the
-    /// first stretch; before the first claim.
+    /// destroyed, and blocks still start at sample 0. A pipe reads them once and replays them.
+    /// Never past the first stretch; before the first claim.
     virtual std::span<const std::byte> opening(std::size_t samples) = 0;
 
-    /// Up to out.size()/frame_bytes frames at stored index `first`; seekable sources only. Returns frames read.
+    /// Up to out.size()/frame_bytes frames at stored index `first`; seekable sources only. Returns
+    /// frames read.
     virtual std::size_t probe(sample_index first, std::span<std::byte> out) = 0;
 
-    /// Next block, in order; called under the pass's lock. At most slot.size()/frame_bytes frames together;
-    /// after the lead, slot frames - lead, or what is left of the stretch. A pipe waits here for bytes.
-    /// Nothing when the recording has ended or the wait was interrupted (wake()).
+    /// Next block, in order; called under the pass's lock. At most slot.size()/frame_bytes frames
+    /// together; after the lead, slot frames - lead, or what is left of the stretch. A pipe waits
+    /// here for bytes. Nothing when the recording has ended or the wait was interrupted (wake()).
     virtual std::optional<raw_block> claim(std::span<std::byte> slot, std::size_t lead) = 0;
 
-    /// Brings the bytes of a claimed block; concurrent calls for different blocks are allowed. Throws
-    /// error{unreadable} when the file shrank or the device failed.
+    /// Brings the bytes of a claimed block; concurrent calls for different blocks are allowed.
+    /// Throws error{unreadable} when the file shrank or the device failed.
     virtual void fill(raw_block&) = 0;
 
     /// Makes a claim that waits, and all later ones, return nothing. Async-signal-safe.
@@ -85,7 +88,7 @@ public:
 
 /// What the user says about a recording (2-jobs options); empty: take it from the recording.
 struct recording_request {
-    std::string path;                    ///< "-" is standard input
+    std::string path; ///< "-" is standard input
     std::optional<sample_format> format;
     std::optional<double> rate_hz, centre_hz;
     std::optional<utc_time> start_utc;
@@ -94,7 +97,7 @@ struct recording_request {
     bool swap_iq = false, inverted = false;
     std::optional<std::variant<double, utc_time>> from, until; ///< base/quantity moment
     bool verify = false;
-    int pipe_descriptor = 0;             ///< where "-" reads; tests set it
+    int pipe_descriptor = 0; ///< where "-" reads; tests set it
 };
 /// Throws tonewalk::error naming the file, the field or byte, and the mend.
 [[nodiscard]] std::unique_ptr<block_source> open_recording(const recording_request&);
