@@ -22,7 +22,8 @@ constexpr double least_null_windows = 6.0;
 constexpr std::size_t least_fit_records = 5;
 // Half a Hann window's mean square time, in windows: a wave whose frequency is off the curve by f
 // loses (2 pi f T)^2 times this of its amplitude.
-constexpr double hann_smear = 0.022; // 0.01634, and a third for uneven fits
+// Rounded up from 0.0163: the fitted bend is a little less than that at the very bottom.
+constexpr double hann_smear = 0.02;
 // A standing wave is a sine's square in power, not a parabola: fitted over a rise R of a whole
 // swing S, its vertex is off by R^2/(35 S) with even points, R^2/(20 S) at the most as records
 // fall.
@@ -192,24 +193,24 @@ interval_estimate level_from(double power, double power_sigma, double smear) {
     return level;
 }
 
-/// How far window and parabola may be off, relative in amplitude. Window: two waves A > B against
-/// each other, the curve on A's frequency; B fades in the window, which lifts a null by B (1 - H)
-/// and lowers a peak by as much. In terms of the parabola that is hann_smear T^2 bend / (2 A), A
-/// half the sum of highest and lowest amplitude.
+/// How far window and parabola may be off, relative in amplitude. Window: two waves A >= B against
+/// each other lie (2 f) apart in frequency, the curve somewhere between; each loses (2 f T)^2
+/// hann_smear at most. The parabola tells (2 f)^2 = bend / (2 A B), and the whole swing 4 A B.
 double walk::shape_error(const parabola_vertex& fit, std::size_t first,
                          std::size_t last) const noexcept {
     const double here = std::sqrt(std::max(fit.y, 0.0));
     if (here <= 0.0) {
         return 0.0;
     }
-    const double other = fit.bend > 0.0 ? highest_ : 0.0; // a peak's null is 0 at the most
-    const double window =
-        hann_smear * window_s_ * window_s_ * std::abs(fit.bend) / ((here + other) * here);
+    const double swing = highest_ * highest_ - lowest_ * lowest_;
+    const double stronger = fit.bend > 0.0 ? 0.5 * (highest_ + here) : here;
+    const double window = swing > 0.0 ? hann_smear * window_s_ * window_s_ * 2.0 *
+                                            std::abs(fit.bend) / swing * stronger / here
+                                      : 0.0;
     const double reach_s =
         std::max(fit.x - steps_[first].record->time_s, steps_[last].record->time_s - fit.x);
     const double rise = 0.5 * std::abs(fit.bend) * reach_s * reach_s;
-    const double swing = std::max(rise, highest_ * highest_ - lowest_ * lowest_);
-    return window + 0.5 * parabola_error * rise * rise / (swing * fit.y);
+    return window + 0.5 * parabola_error * rise * rise / (std::max(rise, swing) * fit.y);
 }
 
 extremum walk::placed_peak(std::size_t place) const {
