@@ -18,6 +18,8 @@ constexpr double least_share = 0.5;   // of the mean depth: silence is steady to
 constexpr double most_unrest = 0.1;   // of the tone's power, in any part
 constexpr double noise_allowed = 6.0; // times the mean noise power: one part in 400 exceeds it
 constexpr double hann_noise_bins = 1.5;
+constexpr double least_depth = 0.005; // rms; below, it is nobody's speech
+constexpr double in_step_bins = 3.0;  // in-step power of depth 1 rms: twice 1.5 bins
 constexpr double in_step_ratio = 1.5; // noise alone: 1 within some hundredths
 
 /// e^(j 2 pi turns n), n from 0.
@@ -141,10 +143,11 @@ bool carrier_parts::in_step(double low_hz, double high_hz,
         return static_cast<std::size_t>(std::max(1.0, hz / bin_hz));
     };
     fft transform{size_};
-    double in_step = 0.0, quadrature = 0.0;
+    double in_step = 0.0, quadrature = 0.0, carrier_squares = 0.0;
     for (std::size_t k = 0; k < count_; ++k) {
         std::copy_n(part(k).begin(), size_, transform.input().begin());
         transform.run();
+        carrier_squares += std::norm(carrier_[k]) * std::norm(carrier_[k]);
         const std::span<const cf32> lines = transform.output();
         for (std::size_t b = bin(low_hz); b < std::min(bin(high_hz), size_ / 2); ++b) {
             const double hz = static_cast<double>(b) * bin_hz;
@@ -160,7 +163,8 @@ bool carrier_parts::in_step(double low_hz, double high_hz,
             }
         }
     }
-    return in_step > in_step_ratio * quadrature;
+    const double least = in_step_bins * least_depth * least_depth * carrier_squares;
+    return in_step > std::max(least, in_step_ratio * quadrature);
 }
 
 } // namespace tonewalk

@@ -20,6 +20,7 @@ const double strongest_sideband =
     decibel::from_db(-2.5).power_ratio();                 // of the carrier: 150 % depth
 constexpr double tone_reach = 0.02, least_reach_hz = 2.0; // of a tone that was asked for
 constexpr double weak_hum_depth = 0.05;
+constexpr double least_depth = 0.001; // fainter pairs are rounding, or a converter's spurs
 const double alike = decibel::from_db(-1.0).power_ratio();
 constexpr std::size_t most_pairs = 24;
 // Parts of 0.125 s tell tones from syllables; tones below 40 Hz need longer ones.
@@ -185,7 +186,8 @@ void close_look::keep_steady(std::vector<pair>& found, double carrier_hz,
         return *parts;
     };
     const auto unsteady = [&](const pair& p) {
-        return !parts_for(p.hz).steady(p.hz, p.depth(carrier_power),
+        return p.depth(carrier_power) < least_depth ||
+               !parts_for(p.hz).steady(p.hz, p.depth(carrier_power),
                                        spectrum_->noise_density(carrier_hz + p.hz));
     };
     found.erase(std::remove_if(found.begin(), found.end(), unsteady), found.end());
@@ -205,7 +207,6 @@ found_carrier close_look::describe(double hz, std::optional<double> wanted_tone_
         high_hz = *wanted_tone_hz + reach_hz;
     }
     std::vector<pair> found = pairs(hz, power, low_hz, high_hz);
-    const bool any = !found.empty();
     if (!wanted_tone_hz) {
         keep_steady(found, hz, power);
     }
@@ -225,9 +226,8 @@ found_carrier close_look::describe(double hz, std::optional<double> wanted_tone_
         c.tones.push_back({p.hz, 100.0 * p.depth(power)});
     }
     const double voice_top_hz = std::min(highest_voice_hz, rate_hz_ / 2.0);
-    c.modulated_unsteadily =
-        (any && found.empty()) || carrier_parts{samples_, rate_hz_, hz, part_s}.in_step(
-                                      lowest_voice_hz, voice_top_hz, c.tones);
+    c.modulated_unsteadily = carrier_parts{samples_, rate_hz_, hz, part_s}.in_step(
+        lowest_voice_hz, voice_top_hz, c.tones);
     return c;
 }
 

@@ -212,6 +212,24 @@ TEST(SignalSearch, SpeechHasNoSteadyTone) {
     }
 }
 
+TEST(SignalSearch, APureCarrierIsNotModulated) {
+    for (const double offset_hz : {7312.34, 21'500.0, -123.4}) {
+        for (const double noise_dbfs_hz : {scene_none, -140.0, -80.0}) {
+            scene s = quiet_scene({pure(offset_hz)});
+            s.receiver.noise_dbfs_hz = noise_dbfs_hz;
+            EXPECT_TRUE(has(search(s), note_code::no_tone)) << offset_hz << ' ' << noise_dbfs_hz;
+        }
+    }
+}
+
+TEST(SignalSearch, PhaseNoiseIsNoSpeech) {
+    scene_carrier c = pure(7312.34);
+    c.phase_noise_dbc_hz = -60.0;
+    const found_signal f = search(quiet_scene({c}));
+    EXPECT_TRUE(has(f, note_code::no_tone));
+    EXPECT_EQ(f.carriers.size(), 1u);
+}
+
 TEST(SignalSearch, AToneThatLastsOneSecondIsSteadyAndAShortOneIsNot) {
     scene_carrier c = pure(7312.34, -20.0);
     c.tones = {{.frequency_hz = 1013.7, .depth_percent = 50.0, .start_s = 0.3, .stop_s = 1.6}};
