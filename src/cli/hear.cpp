@@ -113,13 +113,14 @@ level_log log_or_nothing(line_meter& meter, const measurement& m) {
 
 int run_hear(const hear_options& o, const program& program) {
     audio_choice choice = read_choice(o);
-    chosen("--curves", o.json.curves.empty() ? "all" : o.json.curves, {"none", "all"});
+    o.json.check();
+    o.running.check();
     output_set outputs{o.running.force};
     outputs.also(o.output);
     std::optional<output_file> json = outputs.open(o.json.json);
     audio_file file{choice.file};
 
-    measurement m = open_measurement(o.recording, o.signal);
+    measurement m = open_measurement(o.recording, o.signal, program);
     constexpr double every_s = 0.1, window_s = 0.2;
     line_meter::config meter_config = m.meter(m.grid(every_s, window_s));
     meter_config.envelope_in_use = choice.detector == detector_kind::envelope;

@@ -19,6 +19,9 @@ struct program {
     const stop_watch& stopping;
 };
 
+/// Thrown where a signal stopped the program before anything was measured.
+struct stopped_early {};
+
 /// Runs a job whose options have been read; returns the exit status.
 using job_action = std::function<int(const program&)>;
 

@@ -32,18 +32,24 @@ double positive_seconds(const std::string& text, const char* option) {
     return seconds;
 }
 
-quantity chosen_quantity(const std::string& text, bool has_tone) {
+/// Nothing: the tone where there is one.
+std::optional<quantity> wanted_quantity(const std::string& text) {
     if (text.empty()) {
+        return std::nullopt;
+    }
+    return chosen("--quantity", text, {"tone", "carrier"}) == 0 ? quantity::tone
+                                                                : quantity::carrier;
+}
+
+quantity chosen_quantity(std::optional<quantity> wanted, bool has_tone) {
+    if (!wanted) {
         return has_tone ? quantity::tone : quantity::carrier;
     }
-    if (chosen("--quantity", text, {"tone", "carrier"}) == 1) {
-        return quantity::carrier;
-    }
-    if (!has_tone) {
+    if (wanted == quantity::tone && !has_tone) {
         throw error{fault::malformed, "cannot be used: no steady tone was found", "--quantity tone",
                     "give --tone, or --quantity carrier"};
     }
-    return quantity::tone;
+    return *wanted;
 }
 
 std::optional<detector_kind> chosen_detector(const std::string& text) {
@@ -61,12 +67,14 @@ int run_levels(const levels_options& o, const program& program) {
     const double every_s = positive_seconds(o.every, "--every");
     const double window_s = positive_seconds(o.window, "--window");
     const std::optional<detector_kind> kind = chosen_detector(o.detector);
-    chosen("--curves", o.json.curves.empty() ? "all" : o.json.curves, {"none", "all"});
+    const std::optional<quantity> wanted = wanted_quantity(o.quantity);
+    o.json.check();
+    o.running.check();
     output_set outputs{o.running.force};
     std::optional<output_file> csv = outputs.open(o.csv), json = outputs.open(o.json.json);
 
-    measurement m = open_measurement(o.recording, o.signal);
-    const quantity used = chosen_quantity(o.quantity, m.found.tone_hz.has_value());
+    measurement m = open_measurement(o.recording, o.signal, program);
+    const quantity used = chosen_quantity(wanted, m.found.tone_hz.has_value());
     const record_grid grid = m.grid(every_s, window_s);
     line_meter::config meter_config = m.meter(grid);
     meter_config.envelope_in_use = kind == detector_kind::envelope;

@@ -85,6 +85,14 @@ void refuse_option_like_values(const CLI::App& app) {
     }
 }
 
+/// "--csv: 1 required TEXT missing" or "--tone: At Most 1 required but received 2", in plain words.
+std::string wrong_number_of_values(const std::string& complaint) {
+    const std::string option = complaint.substr(0, complaint.find(':'));
+    const bool missing = complaint.find("missing") != std::string::npos;
+    return option + (missing ? ": needs a value; put it right after the option"
+                             : ": may be given only once; leave the others out");
+}
+
 const CLI::App& deepest(const CLI::App& app) {
     const auto chosen = app.get_subcommands();
     return chosen.empty() ? app : *chosen.front();
@@ -114,6 +122,9 @@ int run(int argc, char** argv) {
     } catch (const CLI::ExtrasError&) {
         complain(unknown_words(deepest(app)));
         return usage_status;
+    } catch (const CLI::ArgumentMismatch& problem) {
+        complain(wrong_number_of_values(problem.what()));
+        return usage_status;
     } catch (const CLI::ParseError& problem) {
         complain(fmt::format("{}; see tonewalk {}--help", problem.what(),
                              &deepest(app) == &app ? "" : deepest(app).get_name() + " "));
@@ -127,7 +138,12 @@ int run(int argc, char** argv) {
         complain("no job given; say tonewalk hear, levels or make, or see tonewalk --help");
         return usage_status;
     }
-    return actions.at(app.get_subcommands().front())({{argv, argv + argc}, stopping});
+    try {
+        return actions.at(app.get_subcommands().front())({{argv, argv + argc}, stopping});
+    } catch (const stopped_early&) {
+        complain("stopped before anything was measured");
+        return stopping.exit_status();
+    }
 }
 
 } // namespace

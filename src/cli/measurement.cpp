@@ -8,6 +8,7 @@
 #include <sys/ioctl.h>
 #include <unistd.h>
 
+#include "tonewalk/base/error.hpp"
 #include "tonewalk/report/text_report.hpp"
 
 namespace tonewalk::cli {
@@ -27,6 +28,23 @@ int screen_columns(int descriptor) {
 void print_to(std::FILE* stream, const std::string& text) {
     std::fputs(text.c_str(), stream); // a reader that went away is no fault of ours
     std::fflush(stream);
+}
+
+/// Looks for the signal; a stop ends the wait for a pipe's opening.
+found_signal find_unless_stopped(block_source& source, const search_request& request,
+                                 const std::stop_token& stop) {
+    const std::stop_callback wake{stop, [&source] { source.wake(); }};
+    try {
+        found_signal found = find_signal(source, request);
+        if (!stop.stop_requested()) {
+            return found;
+        }
+    } catch (const error&) { // a cut opening holds too little, or nothing
+        if (!stop.stop_requested()) {
+            throw;
+        }
+    }
+    throw stopped_early{};
 }
 
 } // namespace
@@ -52,11 +70,12 @@ line_meter::config measurement::meter(const record_grid& grid) const {
     return c;
 }
 
-measurement open_measurement(const recording_options& recording, const signal_options& signal) {
+measurement open_measurement(const recording_options& recording, const signal_options& signal,
+                             const program& program) {
     const search_request request{
         .carrier = signal.carrier_hz(), .tone_hz = signal.tone_hz(), .width_hz = signal.width_hz()};
     std::unique_ptr<block_source> source = open_recording(recording.request());
-    found_signal found = find_signal(*source, request);
+    found_signal found = find_unless_stopped(*source, request, program.stopping.token());
     const stream_facts& facts = source->facts();
     auto front = front_end::make(facts, {&found.plan, 1});
     auto chain = std::make_unique<channel_chain>(*front, 0, found.plan, facts);

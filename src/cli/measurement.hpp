@@ -31,7 +31,9 @@ struct measurement {
     [[nodiscard]] record_grid grid(double every_s, double window_s) const noexcept;
     [[nodiscard]] line_meter::config meter(const record_grid&) const;
 };
-[[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&);
+/// Throws stopped_early when a signal comes before the opening is complete.
+[[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&,
+                                           const program&);
 
 /// Runs the pass; complains of input that failed halfway, whose result is then partial.
 [[nodiscard]] pass_report run(measurement&, const running_options&, const program&);

@@ -147,6 +147,11 @@ void running_options::add_to(CLI::App& app) {
     app.add_flag("--force", force, "replace outputs that exist")->group(group);
 }
 
+void running_options::check() const {
+    static_cast<void>(thread_count());
+    static_cast<void>(progress_shown());
+}
+
 unsigned running_options::thread_count() const {
     if (threads.empty()) {
         return std::clamp(std::thread::hardware_concurrency(), 1U,
@@ -166,6 +171,12 @@ void json_options::add_to(CLI::App& app) {
     const std::string group = "Outputs";
     app.add_option("--json", json, "results as JSON; - is standard output")->group(group);
     app.add_option("--curves", curves, "none: leave what is drawn out of the JSON")->group(group);
+}
+
+void json_options::check() const {
+    if (!curves.empty()) {
+        chosen("--curves", curves, {"none", "all"});
+    }
 }
 
 std::optional<std::filesystem::path> given_path(const std::string& text) {

@@ -42,6 +42,7 @@ struct running_options {
     std::string threads, progress = "auto";
     bool quiet = false, force = false;
     void add_to(CLI::App&);
+    void check() const; ///< throws error{bad_request}, before any file is opened
     [[nodiscard]] unsigned thread_count() const; ///< 1 to 16; the machine's cores when not given
     [[nodiscard]] progress_choice progress_shown() const;
 };
@@ -50,6 +51,7 @@ struct running_options {
 struct json_options {
     std::string json, curves;
     void add_to(CLI::App&);
+    void check() const; ///< likewise
     [[nodiscard]] bool with_curves() const { return curves != "none"; }
 };
 
