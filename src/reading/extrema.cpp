@@ -20,10 +20,11 @@ const double peak_reach = decibel::from_db(-1.0).power_ratio();
 const double null_reach = decibel::from_db(6.0).power_ratio();
 constexpr double least_null_windows = 6.0;
 constexpr std::size_t least_fit_records = 5;
-// Half a Hann window's mean square time, in windows: a wave whose frequency is off the curve by f
-// loses (2 pi f T)^2 times this of its amplitude.
-// Rounded up from 0.0163: the fitted bend is a little less than that at the very bottom.
-constexpr double hann_smear = 0.02;
+// Half a Hann window's mean square time is 0.0163 windows^2: a wave whose frequency is off the
+// curve by f loses (2 pi f T)^2 times this of its amplitude. Nearly doubled, since the curve bends
+// at nulls that lie further apart than its knots, and then stands outside the two waves'
+// frequencies.
+constexpr double hann_smear = 0.03;
 // A standing wave is a sine's square in power, not a parabola: fitted over a rise R of a whole
 // swing S, its vertex is off by R^2/(35 S) with even points, R^2/(20 S) at the most as records
 // fall.
