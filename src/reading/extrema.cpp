@@ -11,6 +11,7 @@
 #include "tonewalk/base/decibel.hpp"
 #include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/parabola_fit.hpp"
+#include "tonewalk/maths/quantile.hpp"
 
 namespace tonewalk {
 namespace {
@@ -345,6 +346,16 @@ std::vector<step> steps_of(std::span<const level_record> records, quantity which
             const double amplitude = line.detected ? std::sqrt(std::max(0.0, line.power)) : 0.0;
             steps.push_back({&r, amplitude, line.power, line.sigma, line.detected});
         }
+    }
+    // A record's own noise may rest on few lines and then comes out far too small now and then:
+    // what the records usually have is the least.
+    std::vector<double> sigmas;
+    for (const step& each : steps) {
+        sigmas.push_back(each.sigma);
+    }
+    const double usual = median(std::move(sigmas));
+    for (step& each : steps) {
+        each.sigma = std::max(each.sigma, usual);
     }
     return steps;
 }
