@@ -66,8 +66,18 @@ straight_line robust_fit(std::vector<weighted_point> points) {
 
 void frequency_curve::add(const frequency_reading& reading) {
     readings_.push_back(reading);
-    provisional_hz_ =
-        provisional_hz_ ? *provisional_hz_ + 0.2 * (reading.hz - *provisional_hz_) : reading.hz;
+    if (reading.weight <= 0.0) {
+        return;
+    }
+    constexpr double share = 0.2; // of a new reading in the provisional frequency
+    provisional_hz_ = is_fresh(reading.time_s)
+                          ? *provisional_hz_ + share * (reading.hz - *provisional_hz_)
+                          : reading.hz;
+    last_reading_s_ = reading.time_s;
+}
+
+bool frequency_curve::is_fresh(double time_s) const noexcept {
+    return last_reading_s_ && time_s - *last_reading_s_ <= knot_s;
 }
 
 double frequency_curve::known_until_s() const noexcept {
@@ -89,46 +99,59 @@ void frequency_curve::make_knot(double time_s) {
         readings_.pop_front();
     }
     std::vector<weighted_point> points;
+    std::size_t records = 0;
     for (const frequency_reading& r : readings_) {
         const double t = r.time_s - time_s;
         const double nearness = 1.0 - std::abs(t) / knot_s;
-        if (nearness > 0.0) {
+        records += nearness > 0.0 ? 1U : 0U;
+        if (nearness > 0.0 && r.weight > 0.0) {
             points.push_back({t, r.hz, r.weight * nearness});
         }
     }
-    if (points.empty()) {
-        const double since_s = any_ ? time_s - last_reading_s_ : 0.0;
-        knots_.push_back({time_s, last_hz_, steepest_hz_s_ * since_s});
+    // A lone record among weak ones may have been lifted over 20 dB by noise alone.
+    constexpr std::size_t least = 3;
+    if (points.empty() || points.size() < std::min(least, records)) {
+        const double unknown_hz =
+            any_ ? steepest_hz_s_ * (time_s - last_fitted_s_) : opening_unknown_hz_;
+        knots_.push_back({time_s, last_hz_, unknown_hz});
         return;
     }
     const straight_line line = robust_fit(points);
-    if (!any_) { // before the first reading, its value
-        for (knot& k : knots_) {
-            k.hz = line.hz;
-        }
+    steepest_hz_s_ = std::max(steepest_hz_s_, std::abs(line.slope_hz_s));
+    if (!any_) {
+        begin_with(line.hz, line.slope_hz_s, time_s + points.front().t);
     }
     any_ = true;
     last_hz_ = line.hz;
-    last_reading_s_ = time_s + points.back().t;
-    steepest_hz_s_ = std::max(steepest_hz_s_, std::abs(line.slope_hz_s));
+    last_fitted_s_ = time_s + points.back().t;
     knots_.push_back({time_s, line.hz, 0.0});
+}
+
+/// Before the first reading, its value; how far that is off, its slope tells.
+void frequency_curve::begin_with(double hz, double slope_hz_s, double first_reading_s) {
+    for (knot& k : knots_) {
+        k.hz = hz;
+        k.unknown_hz = std::abs(slope_hz_s) * std::max(0.0, first_reading_s - k.time_s);
+    }
 }
 
 frequency_curve::value frequency_curve::at(double time_s) const noexcept {
     if (knots_.empty()) {
-        return {provisional_hz(), 0.0};
+        return {provisional_hz(), 0.0, last_reading_s_ ? 0.0 : opening_unknown_hz_};
     }
     const auto after = std::upper_bound(knots_.begin(), knots_.end(), time_s,
                                         [](double t, const knot& k) { return t < k.time_s; });
     if (after == knots_.end()) {
-        return {knots_.back().hz, knots_.back().unknown_hz};
+        return {knots_.back().hz, 0.0, knots_.back().unknown_hz};
     }
     if (after == knots_.begin()) {
-        return {after->hz, after->unknown_hz};
+        return {after->hz, 0.0, after->unknown_hz};
     }
     const knot& left = *(after - 1);
     const double share = (time_s - left.time_s) / (after->time_s - left.time_s);
-    return {left.hz + share * (after->hz - left.hz), std::max(left.unknown_hz, after->unknown_hz)};
+    return {left.hz + share * (after->hz - left.hz),
+            (after->hz - left.hz) / (after->time_s - left.time_s),
+            std::max(left.unknown_hz, after->unknown_hz)};
 }
 
 } // namespace tonewalk

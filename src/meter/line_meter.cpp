@@ -8,9 +8,9 @@
 
 #include <fmt/core.h>
 
+#include "am_lines.hpp"
 #include "frequency_curve.hpp"
 #include "level_intervals.hpp"
-#include "line_moments.hpp"
 #include "noise_lines.hpp"
 #include "strip_picture.hpp"
 #include "tonewalk/base/error.hpp"
@@ -19,32 +19,22 @@
 namespace tonewalk {
 namespace {
 
-constexpr double strong_ratio = 100.0; // 20 dB line SNR: knows its frequency, can be split
-constexpr double least_noise_lines = 16.0;
+constexpr double strong_ratio = 100.0;     // 20 dB line SNR: knows its frequency, can be split
+constexpr double least_noise_lines = 16.0; // independent ones
 constexpr double neighbour_reach_s = 10.0;
-constexpr double most_offset_hz = 2.0;  // of the curve from what a record was correlated at
-constexpr double least_tone_bins = 3.0; // between carrier and tone lines
-constexpr double least_noise = 1e-30;   // full scale^2; below any float sample's own rounding
-
-/// Amplitudes of carrier, upper and lower line.
-struct three_lines {
-    cf64 carrier, upper, lower;
-};
-
-/// Takes out what a Hann window leaks from each of three evenly spaced lines into the others.
-three_lines without_leakage(const three_lines& m, double spacing_bins) {
-    const double near = hann_response(spacing_bins), far = hann_response(2.0 * spacing_bins);
-    const cf64 sum = (m.upper + m.lower - 2.0 * near * m.carrier) / (1.0 + far - 2.0 * near * near);
-    const cf64 difference = (m.upper - m.lower) / (1.0 - far);
-    return {m.carrier - near * sum, 0.5 * (sum + difference), 0.5 * (sum - difference)};
-}
+constexpr double most_offset_hz = 2.0; // of the curve from what a record was correlated at
+constexpr double most_search_hz = 20.0;
+constexpr double opening_unknown_hz = 0.25; // half a line of the 2 s that were searched
+constexpr double least_tone_bins = 3.0;     // between carrier and tone lines
+constexpr double least_noise = 1e-30;       // full scale^2; below any float sample's own rounding
 
 /// A record whose frequency is not final yet: its lines' moments and its noise.
 struct pending_record {
     std::size_t index = 0; // in the log
     std::uint32_t stretch = 0;
     double time_s = 0.0;
-    line_moments carrier, upper, lower;
+    double peak_hz = 0.0, carrier_power = 0.0; // of the highest line about the expected one
+    am_lines lines;
     noise_reading noise;
 };
 
@@ -64,9 +54,11 @@ struct line_meter::state {
     explicit state(const config& c)
         : set{c}, samples{static_cast<std::size_t>(c.grid.window_samples())},
           weights{hann_weights(samples)}, window_s{static_cast<double>(samples) / c.grid.rate_hz},
-          orders{orders_reaching(most_offset_hz, window_s, c.grid.rate_hz)}, plain{samples},
-          weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}}, curve{0.0},
-          picture{c.width_hz, c.carrier_offset_hz} {
+          reach_hz{std::min(most_offset_hz, 1.0 / window_s)},
+          search_hz{std::min(most_search_hz, c.tone_hz.value_or(c.width_hz) / 3.0)},
+          orders{orders_reaching(reach_hz, window_s, c.grid.rate_hz)}, plain{samples},
+          weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}},
+          curve{0.0, opening_unknown_hz}, picture{c.width_hz, c.carrier_offset_hz} {
         log.every_s = c.grid.every_s;
         log.window_s = window_s;
         log.width_hz = c.width_hz;
@@ -79,12 +71,14 @@ struct line_meter::state {
     void forget_before(sample_index first);
     void measure(sample_index first);
     void null_record(double time_s, std::uint32_t flags);
-    [[nodiscard]] double own_frequency(const line_moments&) const;
-    [[nodiscard]] three_lines lines_at(const pending_record&, double carrier_hz) const;
+    [[nodiscard]] pending_record read(double time_s, double carrier_hz);
+    [[nodiscard]] bool in_sight(const pending_record&) const noexcept;
+    void search(pending_record&);
     void settle(bool stretch_over);
     [[nodiscard]] noise_reading noise_for(const pending_record&) const;
     void settle(const pending_record&);
-    void refine_tone(const pending_record&, double carrier_hz, double weight);
+    static void measure_tone(const three_lines&, double independent, level_record&, record_basis&);
+    [[nodiscard]] double tone_shift_hz() const;
     void complete();
     [[nodiscard]] bool touched(sample_index first) const noexcept;
     [[nodiscard]] double tone() const noexcept { return set.tone_hz.value_or(0.0); }
@@ -93,9 +87,12 @@ struct line_meter::state {
     std::size_t samples;         // of a record
     std::vector<double> weights; // Hann, sum 1
     double window_s;
+    double reach_hz;  // of a record's moments
+    double search_hz; // for a carrier that was away
     moment_orders orders;
     sample_runs plain, weighted; // of the record at hand
     noise_lines noise;
+    std::vector<fitted_line> fitted; // in the record at hand
     frequency_curve curve;
     strip_picture picture;
     level_intervals intervals;
@@ -109,8 +106,10 @@ struct line_meter::state {
     std::vector<sample_range> non_finite;
 
     std::deque<pending_record> pending;
-    std::deque<pending_record> settled;         // noise readings of the last 10 s
-    double tone_weight = 0.0, tone_shift = 0.0; // refinement over all records
+    std::deque<pending_record> settled; // noise readings of the last 10 s
+    std::size_t tone_records = 0;
+    double tone_evidence = 0.0;               // line powers over noise
+    double tone_slope = 0.0, tone_bend = 0.0; // of the tone lines' power over all records
     double offset_weight = 0.0, offset_sum = 0.0;
 };
 
@@ -202,65 +201,64 @@ void line_meter::state::null_record(double time_s, std::uint32_t flags) {
     intervals.add_null();
 }
 
-/// Where the carrier line of the record is highest.
-double line_meter::state::own_frequency(const line_moments& carrier) const {
-    constexpr int steps = 8;
-    const double reach = std::min(most_offset_hz, 1.0 / window_s);
-    double hz = carrier.f0_hz();
-    for (int k = 0; k < steps; ++k) {
-        const line_moments::series x = carrier.derivatives(hz);
-        const double slope = 2.0 * (x.first * std::conj(x.value)).real();
-        const double bend = 2.0 * ((x.second * std::conj(x.value)).real() + std::norm(x.first));
-        if (bend >= 0.0) {
-            break;
-        }
-        hz = std::clamp(hz - slope / bend, carrier.f0_hz() - reach, carrier.f0_hz() + reach);
+/// Lines and noise of the record at hand, for a carrier about `carrier_hz`.
+pending_record line_meter::state::read(double time_s, double carrier_hz) {
+    const am_lines lines{weighted, {set.grid.rate_hz, carrier_hz, set.tone_hz, orders}};
+    const double peak_hz = lines.carrier_peak_hz(reach_hz);
+    const three_lines found = lines.at(peak_hz, 0.0);
+    fitted = {{peak_hz, found.carrier}};
+    if (set.tone_hz) {
+        fitted.push_back({peak_hz + tone(), found.upper});
+        fitted.push_back({peak_hz - tone(), found.lower});
     }
-    return hz;
+    return {log.records.size(),
+            stretch.index,
+            time_s,
+            peak_hz,
+            std::norm(found.carrier),
+            lines,
+            noise.measure(plain, fitted)};
 }
 
-three_lines line_meter::state::lines_at(const pending_record& p, double carrier_hz) const {
-    const three_lines raw{p.carrier.at(carrier_hz),
-                          set.tone_hz ? p.upper.at(carrier_hz + tone()) : cf64{},
-                          set.tone_hz ? p.lower.at(carrier_hz - tone()) : cf64{}};
-    return set.tone_hz ? without_leakage(raw, tone() * window_s) : raw;
+/// Whether the carrier's peak, not only its flank, was seen.
+bool line_meter::state::in_sight(const pending_record& p) const noexcept {
+    return std::abs(p.peak_hz - p.lines.carrier_hz()) < 0.999 * reach_hz;
+}
+
+/// Reads the record anew where a strong line near the expected place was not what was read.
+void line_meter::state::search(pending_record& p) {
+    constexpr int most_steps = 6;
+    const auto [hz, power] = noise.strongest_near(p.lines.carrier_hz(), search_hz);
+    if (power < std::max(strong_ratio * p.noise.mean_power, p.carrier_power)) {
+        return;
+    }
+    p = read(p.time_s, hz);
+    for (int k = 0; k < most_steps && !in_sight(p); ++k) {
+        p = read(p.time_s, p.peak_hz);
+    }
 }
 
 void line_meter::state::measure(sample_index first) {
     const std::span<const cf32> record = std::span<const cf32>{history}.subspan(
         static_cast<std::size_t>(first - history_first), samples);
-    const double f0 = curve.provisional_hz(), rate = set.grid.rate_hz;
-    pending_record p;
-    p.index = log.records.size();
-    p.stretch = stretch.index;
-    p.time_s = stretch.start_s + set.grid.centre_s(next);
     plain.set(record);
     weighted.set(record, weights);
-    p.carrier = line_moments{weighted, rate, f0, orders};
-    if (set.tone_hz) {
-        p.upper = line_moments{weighted, rate, f0 + tone(), orders};
-        p.lower = line_moments{weighted, rate, f0 - tone(), orders};
+    const double time_s = stretch.start_s + set.grid.centre_s(next);
+    pending_record p = read(time_s, curve.provisional_hz());
+    if (!curve.is_fresh(time_s)) { // the carrier was away: it may have drifted meanwhile
+        search(p);
     }
-    const double own = own_frequency(p.carrier);
-    const three_lines found = lines_at(p, own);
-    std::vector<fitted_line> lines{{own, found.carrier}};
-    if (set.tone_hz) {
-        lines.push_back({own + tone(), found.upper});
-        lines.push_back({own - tone(), found.lower});
-    }
-    p.noise = noise.measure(plain, lines);
-    picture.add(p.time_s, noise.line_powers(), noise.bin_hz(), lines);
-    const double power = std::norm(found.carrier);
-    if (p.noise.lines > 0.0 && power > strong_ratio * std::max(p.noise.mean_power, least_noise)) {
-        curve.add({p.time_s, own, power});
-    }
+    picture.add(time_s, noise.line_powers(), noise.bin_hz(), fitted);
+    const bool strong = in_sight(p) && p.noise.independent > 0.0 &&
+                        p.carrier_power > strong_ratio * std::max(p.noise.mean_power, least_noise);
+    curve.add({time_s, p.peak_hz, strong ? p.carrier_power : 0.0});
     level_record entry;
-    entry.time_s = p.time_s;
+    entry.time_s = time_s;
     entry.stretch = stretch.index;
     log.records.push_back(entry);
     intervals.add_null();
     pending.push_back(std::move(p));
-    curve.advance(pending.back().time_s);
+    curve.advance(time_s);
     settle(false);
 }
 
@@ -271,7 +269,7 @@ void line_meter::state::settle(bool stretch_over) {
         const double latest_s = pending.back().time_s;
         const bool curve_known = stretch_over || p.time_s < curve.known_until_s() ||
                                  latest_s - p.time_s > neighbour_reach_s;
-        const bool noise_known = stretch_over || p.noise.lines >= least_noise_lines ||
+        const bool noise_known = stretch_over || p.noise.independent >= least_noise_lines ||
                                  pending.back().stretch != p.stretch ||
                                  latest_s - p.time_s > neighbour_reach_s;
         if (!curve_known || !noise_known) {
@@ -280,7 +278,7 @@ void line_meter::state::settle(bool stretch_over) {
         settle(p);
         settled.push_back(std::move(pending.front()));
         pending.pop_front();
-        settled.back().carrier = settled.back().upper = settled.back().lower = line_moments{};
+        settled.back().lines.clear();
         while (!settled.empty() && latest_s - settled.front().time_s > 2.0 * neighbour_reach_s) {
             settled.pop_front();
         }
@@ -290,7 +288,7 @@ void line_meter::state::settle(bool stretch_over) {
 /// The record's own noise; with too few lines its nearest neighbours' in the stretch join, as few
 /// as do, each a window apart from the last so that they are independent.
 noise_reading line_meter::state::noise_for(const pending_record& p) const {
-    noise_reading total{p.noise.mean_power * p.noise.lines, p.noise.lines, p.noise.independent};
+    noise_reading total{p.noise.mean_power * p.noise.independent, p.noise.independent};
     std::vector<const pending_record*> near;
     for (const std::deque<pending_record>* side : {&settled, &pending}) {
         for (const pending_record& other : *side) {
@@ -306,7 +304,7 @@ noise_reading line_meter::state::noise_for(const pending_record& p) const {
     });
     std::vector<double> taken{p.time_s};
     for (const pending_record* other : near) {
-        if (total.lines >= least_noise_lines) {
+        if (total.independent >= least_noise_lines) {
             break;
         }
         const bool apart = std::all_of(taken.begin(), taken.end(), [&](double t) {
@@ -314,19 +312,18 @@ noise_reading line_meter::state::noise_for(const pending_record& p) const {
         });
         if (apart) {
             taken.push_back(other->time_s);
-            total.mean_power += other->noise.mean_power * other->noise.lines;
-            total.lines += other->noise.lines;
+            total.mean_power += other->noise.mean_power * other->noise.independent;
             total.independent += other->noise.independent;
         }
     }
-    total.mean_power = total.lines > 0.0 ? total.mean_power / total.lines : 0.0;
+    total.mean_power /= std::max(1.0, total.independent);
     return total;
 }
 
 void line_meter::state::settle(const pending_record& p) {
-    const noise_reading floor = p.noise.lines >= least_noise_lines ? p.noise : noise_for(p);
+    const noise_reading floor = p.noise.independent >= least_noise_lines ? p.noise : noise_for(p);
     const frequency_curve::value at = curve.at(p.time_s);
-    three_lines lines = lines_at(p, at.hz);
+    three_lines lines = p.lines.at(at.hz, at.slope_hz_s);
     const auto gain = [this](double hz) { return set.response ? set.response(hz) : 1.0; };
     lines.carrier /= gain(at.hz);
     lines.upper /= gain(at.hz + tone());
@@ -344,41 +341,41 @@ void line_meter::state::settle(const pending_record& p) {
 
     record_basis basis{.independent = floor.independent, .unknown_hz = at.unknown_hz};
     if (set.tone_hz) {
-        const double sum = std::norm(lines.upper) + std::norm(lines.lower);
-        r.tone.sigma = std::sqrt(n);
-        r.tone.detected = sum > 2.0 * n * tone_detection_ratio(floor.independent);
         basis.split = r.carrier.power > strong_ratio * n;
-        if (basis.split) {
-            const cf64 c = lines.carrier / std::abs(lines.carrier);
-            const cf64 s = lines.upper * std::conj(c) + std::conj(lines.lower) * c;
-            const cf64 q = lines.upper * std::conj(c) - std::conj(lines.lower) * c;
-            const double v = n / (2.0 * r.carrier.power);
-            const double in_phase = std::norm(s) - 2.0 * n, across = std::norm(q) - 2.0 * n;
-            r.tone.power = ((1.0 - v) * in_phase - v * across) / (1.0 - 2.0 * v);
-            basis.across_power = ((1.0 - v) * across - v * in_phase) / (1.0 - 2.0 * v);
-        } else {
-            r.tone.power = 2.0 * (sum - 2.0 * n);
-        }
-        if (basis.split && r.tone.detected) {
-            refine_tone(p, at.hz, sum / n);
-        }
+        measure_tone(lines, floor.independent, r, basis);
+        const power_bend b = p.lines.tone_bend(at.hz);
+        tone_slope += b.slope / n;
+        tone_bend += b.bend / n;
+        tone_evidence += (std::norm(lines.upper) + std::norm(lines.lower)) / n - 2.0;
+        ++tone_records;
     }
     intervals.set(p.index, basis);
 }
 
-/// How far the tone is off the opening's: where both its lines together are highest.
-void line_meter::state::refine_tone(const pending_record& p, double carrier_hz, double weight) {
-    const line_moments::series u = p.upper.derivatives(carrier_hz + tone());
-    const line_moments::series l = p.lower.derivatives(carrier_hz - tone());
-    const double slope =
-        2.0 * (u.first * std::conj(u.value)).real() - 2.0 * (l.first * std::conj(l.value)).real();
-    const double bend = 2.0 * ((u.second * std::conj(u.value)).real() + std::norm(u.first)) +
-                        2.0 * ((l.second * std::conj(l.value)).real() + std::norm(l.first));
-    if (bend < 0.0) {
-        const double reach = 0.5 / window_s;
-        tone_shift += weight * std::clamp(-slope / bend, -reach, reach);
-        tone_weight += weight;
+void line_meter::state::measure_tone(const three_lines& lines, double independent, level_record& r,
+                                     record_basis& basis) {
+    const double n = r.noise_power;
+    const double sum = std::norm(lines.upper) + std::norm(lines.lower);
+    r.tone.sigma = std::sqrt(n);
+    r.tone.detected = sum > 2.0 * n * tone_detection_ratio(independent);
+    if (basis.split) {
+        const split_power split = split_tone(lines, n);
+        r.tone.power = split.in_phase;
+        basis.across_power = split.across;
+    } else {
+        r.tone.power = 2.0 * (sum - 2.0 * n);
     }
+}
+
+/// How far the tone is off the opening's: where both its lines together, over all records and
+/// each against its noise, are highest; nothing where they hardly stand out of it.
+double line_meter::state::tone_shift_hz() const {
+    constexpr double least_evidence = 20.0, sigmas = 5.0;
+    const double scatter = std::sqrt(2.0 * static_cast<double>(tone_records));
+    if (tone_evidence < least_evidence + sigmas * scatter || tone_bend >= 0.0) {
+        return 0.0;
+    }
+    return hann_offset_bins(-tone_slope / tone_bend * window_s) / window_s;
 }
 
 void line_meter::end_stretch() {
@@ -397,7 +394,7 @@ void line_meter::state::complete() {
     }
     log.carrier_offset_hz =
         set.carrier_offset_hz + (offset_weight > 0.0 ? offset_sum / offset_weight : 0.0);
-    const double shift_hz = tone_weight > 0.0 ? tone_shift / tone_weight : 0.0;
+    const double shift_hz = tone_shift_hz();
     if (set.tone_hz) {
         log.tone_hz = *set.tone_hz + shift_hz;
     }

@@ -106,25 +106,34 @@ line_moments::line_moments(const sample_runs& weighted, double rate_hz, double f
     }
 }
 
-cf64 line_moments::at(double hz) const noexcept {
+cf64 line_moments::derivative(double hz, std::size_t order) const noexcept {
     const double theta = pi * (hz - f0_hz_) * window_s_;
     cf64 sum{};
-    for (auto c = coefficients_.rbegin(); c != coefficients_.rend(); ++c) {
-        sum = sum * theta + *c;
+    for (std::size_t p = coefficients_.size(); p-- > order;) {
+        double falling = 1.0; // p (p - 1) ...
+        for (std::size_t k = 0; k < order; ++k) {
+            falling *= static_cast<double>(p - k);
+        }
+        sum = sum * theta + falling * coefficients_[p];
+    }
+    return sum;
+}
+
+cf64 line_moments::at(double hz, double slope_hz_s) const noexcept {
+    // The drift's phase is kappa u^2, and every u^2 is two derivatives by theta.
+    constexpr double negligible = 1e-7;
+    const cf64 kappa{0.0, pi * slope_hz_s * window_s_ * window_s_ / 4.0};
+    cf64 sum{}, factor{1.0, 0.0};
+    for (std::size_t q = 0; 2 * q < coefficients_.size() && std::abs(factor) > negligible; ++q) {
+        sum += factor * derivative(hz, 2 * q);
+        factor *= kappa / static_cast<double>(q + 1);
     }
     return sum;
 }
 
 line_moments::series line_moments::derivatives(double hz) const noexcept {
     const double per_hz = pi * window_s_;
-    const double theta = per_hz * (hz - f0_hz_);
-    series s{};
-    for (auto c = coefficients_.rbegin(); c != coefficients_.rend(); ++c) {
-        s.second = s.second * theta + 2.0 * s.first;
-        s.first = s.first * theta + s.value;
-        s.value = s.value * theta + *c;
-    }
-    return {s.value, s.first * per_hz, s.second * per_hz * per_hz};
+    return {derivative(hz, 0), derivative(hz, 1) * per_hz, derivative(hz, 2) * per_hz * per_hz};
 }
 
 double hann_response(double bins) noexcept {
@@ -136,6 +145,22 @@ double hann_response(double bins) noexcept {
         return 0.5;
     }
     return std::sin(pi * x) / (pi * x) / (1.0 - x * x);
+}
+
+double hann_offset_bins(double newton_step_bins) noexcept {
+    constexpr double small = 1e-3, most = 0.5;
+    constexpr int halvings = 50;
+    const auto step_from = [](double x) { // of the power at x off the peak
+        const auto power = [](double bins) { return std::pow(hann_response(bins), 2); };
+        const double below = power(x - small), here = power(x), above = power(x + small);
+        return -0.5 * small * (above - below) / (above - 2.0 * here + below);
+    };
+    double low = 0.0, high = most; // the step grows with the offset
+    for (int k = 0; k < halvings; ++k) {
+        const double middle = 0.5 * (low + high);
+        (std::abs(step_from(middle)) < std::abs(newton_step_bins) ? low : high) = middle;
+    }
+    return std::copysign(low, newton_step_bins);
 }
 
 double hann_leakage_bound(double bins) noexcept {

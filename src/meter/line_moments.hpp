@@ -29,7 +29,9 @@ public:
     /// `weighted`: the record times a window that sums to 1.
     line_moments(const sample_runs& weighted, double rate_hz, double f0_hz, const moment_orders&);
     [[nodiscard]] double f0_hz() const noexcept { return f0_hz_; }
-    [[nodiscard]] cf64 at(double hz) const noexcept;
+    [[nodiscard]] cf64 at(double hz) const noexcept { return derivative(hz, 0); }
+    /// The correlation with a line that is at `hz` in the middle and drifts by `slope_hz_s`.
+    [[nodiscard]] cf64 at(double hz, double slope_hz_s) const noexcept;
     /// X and its first two derivatives by frequency, per Hz.
     struct series {
         cf64 value, first, second;
@@ -37,6 +39,8 @@ public:
     [[nodiscard]] series derivatives(double hz) const noexcept;
 
 private:
+    /// By theta, `order` times.
+    [[nodiscard]] cf64 derivative(double hz, std::size_t order) const noexcept;
     std::vector<cf64> coefficients_; // of the series in theta = pi delta T
     double f0_hz_ = 0.0, window_s_ = 0.0;
 };
@@ -44,6 +48,9 @@ private:
 /// Amplitude of a line `bins` (delta T) off in a Hann-windowed correlation, 1
 /// at 0.
 [[nodiscard]] double hann_response(double bins) noexcept;
+/// How many bins off its true place a line was read whose power gives this Newton step
+/// (-slope/bend) towards its peak, in bins; |result| <= 0.5.
+[[nodiscard]] double hann_offset_bins(double newton_step_bins) noexcept;
 /// The largest that |hann_response| takes from `bins` on.
 [[nodiscard]] double hann_leakage_bound(double bins) noexcept;
 

@@ -4,6 +4,9 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <utility>
+
+#include "tonewalk/base/random.hpp"
 
 namespace tonewalk {
 namespace {
@@ -21,6 +24,27 @@ double mean_after_cut() {
     const double cut = outlier_ratio * std::numbers::ln2;
     const double rest = std::exp(-cut);
     return 1.0 - cut * rest / (1.0 - rest);
+}
+
+struct kept_lines {
+    double sum = 0.0, count = 0.0, limit = 0.0;
+};
+
+kept_lines without_outliers(const std::vector<double>& powers, std::vector<double>& sorted) {
+    sorted = powers;
+    const auto middle = sorted.begin() + static_cast<std::ptrdiff_t>(sorted.size() / 2);
+    std::nth_element(sorted.begin(), middle, sorted.end());
+    const double below = sorted.size() % 2 == 1 || sorted.size() < 2
+                             ? *middle
+                             : *std::max_element(sorted.begin(), middle);
+    kept_lines kept{0.0, 0.0, outlier_ratio * 0.5 * (below + *middle)};
+    for (const double power : powers) {
+        if (power <= kept.limit) {
+            kept.sum += power;
+            kept.count += 1.0;
+        }
+    }
+    return kept;
 }
 
 /// The largest length of small prime factors that fits: a little of the record's end may be left
@@ -105,6 +129,21 @@ std::size_t noise_lines::usable(std::span<const fitted_line> lines) const {
     return count;
 }
 
+noise_lines::spectral_line noise_lines::strongest_near(double hz, double reach_hz) const noexcept {
+    spectral_line best;
+    const auto size = static_cast<int>(powers_.size());
+    const auto first = static_cast<int>(std::ceil((hz - reach_hz) / bin_hz_));
+    const auto last = static_cast<int>(std::floor((hz + reach_hz) / bin_hz_));
+    for (int k = std::max(first, -(size - 1) / 2); k <= std::min(last, (size - 1) / 2); ++k) {
+        const double power =
+            static_cast<double>(powers_[static_cast<std::size_t>(k < 0 ? k + size : k)]);
+        if (power > best.power) {
+            best = {k * bin_hz_, power};
+        }
+    }
+    return best;
+}
+
 void noise_lines::transform(const sample_runs& record, std::span<const fitted_line> lines) {
     const double centre = static_cast<double>(record_samples_) / 2.0;
     running_.clear();
@@ -136,17 +175,18 @@ void noise_lines::transform(const sample_runs& record, std::span<const fitted_li
 }
 
 noise_reading noise_lines::average() {
-    sorted_ = kept_;
-    const auto middle = sorted_.begin() + static_cast<std::ptrdiff_t>(sorted_.size() / 2);
-    std::nth_element(sorted_.begin(), middle, sorted_.end());
-    const double limit = outlier_ratio * *middle;
-    double sum = 0.0, count = 0.0, shared = 0.0;
+    constexpr std::size_t few = 32;
+    const kept_lines kept = without_outliers(kept_, sorted_);
+    const double mean = kept.sum / kept.count;
+    if (kept_.size() < few) {
+        const small_sample& s = small_sample_for(chosen_);
+        return {mean / s.bias, s.independent};
+    }
+    double shared = 0.0;
     for (std::size_t a = 0; a < kept_.size(); ++a) {
-        if (kept_[a] > limit) {
+        if (kept_[a] > kept.limit) {
             continue;
         }
-        sum += kept_[a];
-        count += 1.0;
         shared += 1.0;
         for (std::size_t b = a + 1; b < kept_.size(); ++b) {
             const auto apart = static_cast<std::size_t>(chosen_[b] - chosen_[a]);
@@ -157,7 +197,49 @@ noise_reading noise_lines::average() {
         }
     }
     static const double bias = mean_after_cut();
-    return {sum / count / bias, count, count * count / shared};
+    return {mean / bias, kept.count * kept.count / shared};
+}
+
+/// Few lines, neighbours alike: what the outlier rule does to them is found by trying it on noise
+/// that the window colours as it colours the recording's.
+const noise_lines::small_sample& noise_lines::small_sample_for(const std::vector<int>& bins) {
+    const auto found = small_samples_.find(bins);
+    if (found != small_samples_.end()) {
+        return found->second;
+    }
+    // The window's own transform: what each line takes from its neighbours of white noise.
+    constexpr int reach = 3;
+    constexpr double takes[] = {0.35875, -0.48829 / 2, 0.14128 / 2, -0.01168 / 2};
+    double squares = takes[0] * takes[0];
+    for (int k = 1; k <= reach; ++k) {
+        squares += 2.0 * takes[k] * takes[k];
+    }
+    constexpr int trials = 1000;
+    random_stream random{1};
+    const int first = bins.front() - reach;
+    std::vector<cf64> white(static_cast<std::size_t>(bins.back() + reach - first + 1));
+    std::vector<double> powers(bins.size());
+    double sum = 0.0, sum_of_squares = 0.0;
+    for (int trial = 0; trial < trials; ++trial) {
+        for (cf64& w : white) {
+            const double re = random.gaussian(), im = random.gaussian();
+            w = {re, im};
+        }
+        for (std::size_t k = 0; k < bins.size(); ++k) {
+            cf64 line{};
+            for (int m = -reach; m <= reach; ++m) {
+                line += takes[std::abs(m)] * white[static_cast<std::size_t>(bins[k] + m - first)];
+            }
+            powers[k] = std::norm(line) / (2.0 * squares);
+        }
+        const kept_lines kept = without_outliers(powers, sorted_);
+        sum += kept.sum / kept.count;
+        sum_of_squares += kept.sum / kept.count * (kept.sum / kept.count);
+    }
+    const double mean = sum / trials;
+    const double variance = sum_of_squares / trials - mean * mean;
+    const small_sample made{mean, mean * mean / variance};
+    return small_samples_.emplace(bins, made).first->second;
 }
 
 noise_reading noise_lines::measure(const sample_runs& record, std::span<const fitted_line> lines) {

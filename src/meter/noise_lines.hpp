@@ -3,6 +3,7 @@
 
 #include <complex>
 #include <functional>
+#include <map>
 #include <span>
 #include <vector>
 
@@ -22,7 +23,6 @@ struct fitted_line {
 /// What the lines between the fitted ones say of the noise.
 struct noise_reading {
     double mean_power = 0.0;  ///< of a Hann line of the record; 0 without lines
-    double lines = 0.0;       ///< that were averaged
     double independent = 0.0; ///< K: how many independent ones they amount to
 };
 
@@ -46,6 +46,11 @@ public:
     /// index 0 is 0 Hz, then upwards, negative frequencies last.
     [[nodiscard]] std::span<const float> line_powers() const noexcept { return powers_; }
     [[nodiscard]] double bin_hz() const noexcept { return bin_hz_; }
+    /// The strongest of those lines within `reach_hz` of `hz`.
+    struct spectral_line {
+        double hz = 0.0, power = 0.0;
+    };
+    [[nodiscard]] spectral_line strongest_near(double hz, double reach_hz) const noexcept;
     /// How many lines a record with these fitted lines would average.
     [[nodiscard]] std::size_t usable(std::span<const fitted_line> lines) const;
 
@@ -53,6 +58,11 @@ private:
     void transform(const sample_runs& record, std::span<const fitted_line> lines);
     [[nodiscard]] bool is_usable(double hz, std::span<const fitted_line> lines) const noexcept;
     [[nodiscard]] noise_reading average();
+    struct small_sample {
+        double bias = 1.0; // mean after the outlier rule over the true mean
+        double independent = 0.0;
+    };
+    const small_sample& small_sample_for(const std::vector<int>& bins);
 
     double rate_hz_, width_hz_, bin_hz_;
     std::size_t record_samples_;
@@ -64,6 +74,7 @@ private:
     std::vector<run_phasor> running_;
     std::vector<int> chosen_; // bins, ascending frequency
     std::vector<double> kept_, sorted_;
+    std::map<std::vector<int>, small_sample> small_samples_;
 };
 
 } // namespace tonewalk
