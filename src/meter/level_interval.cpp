@@ -10,7 +10,7 @@
 namespace tonewalk {
 namespace {
 
-constexpr double step = 0.25;               // of the root of the ratio
+constexpr double step = 0.125;              // of the root of the ratio
 constexpr double most_root = 12.0;          // 21.6 dB
 constexpr double most_independent = 4000.0; // beyond, the noise counts as known
 constexpr double false_detection = 1e-3;
@@ -44,18 +44,20 @@ amplitude_limits::pair amplitude_limits::operator()(double ratio, int degrees, d
     const auto at = [&](std::vector<double>& values, std::size_t k, double p) {
         if (std::isnan(values[k])) {
             const double here = std::max(1e-4, static_cast<double>(k) * step);
-            values[k] = std::sqrt(line_power_inverse(here * here, p, degrees, 2.0 * t.nominal));
+            values[k] = line_power_inverse(here * here, p, degrees, 2.0 * t.nominal);
         }
         return values[k];
     };
     const double place = root / step;
     const auto k = static_cast<std::size_t>(place);
     const double share = place - static_cast<double>(k);
-    const auto between = [&](std::vector<double>& values, double p) {
-        const double left = at(values, k, p);
-        return left + share * (at(values, k + 1, p) - left);
-    };
-    return {between(t.low, below_low), between(t.high, below_high)};
+    // Either limit leaves zero as a power does, so that straight lines between powers are never
+    // below the upper one, and those between amplitudes never above the lower one.
+    const double low = std::lerp(std::sqrt(at(t.low, k, below_low)),
+                                 std::sqrt(at(t.low, k + 1, below_low)), share);
+    const double high =
+        std::sqrt(std::lerp(at(t.high, k, below_high), at(t.high, k + 1, below_high), share));
+    return {low, high};
 }
 
 double carrier_detection_ratio(double independent) {

@@ -27,7 +27,7 @@ private:
     struct table {
         double nominal = 0.0;          // the K that it is made for
         double reach = 0.0;            // of Student's t
-        std::vector<double> low, high; // at ratio = (k step)^2; NaN until needed
+        std::vector<double> low, high; // powers at ratio = (k step)^2; NaN until needed
     };
     table& table_for(int degrees, double independent);
     std::map<std::pair<int, int>, table> tables_;

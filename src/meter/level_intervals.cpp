@@ -68,6 +68,7 @@ void level_intervals::correct_incidental_phase(level_log& log) {
     for (std::size_t k = 0; k < log.records.size(); ++k) {
         if (!basis_[k].split) {
             log.records[k].tone.power /= 1.0 + share;
+            log.records[k].tone.sigma /= std::sqrt(1.0 + share);
         }
     }
 }
@@ -132,13 +133,15 @@ void level_intervals::fill(level_log& log, level_record& r, const record_basis& 
                           hann_leakage_bound(2.0 * (offset_bins - tone_bins)));
     const bounds on_tone{c.dc_amplitude * dc_leak + c.image_ratio * image_leak,
                          droop + (basis.split ? 0.0 : incidental_bound_)};
-    const double raw_ratio =
-        basis.split ? r.tone.power / (2.0 * n) + 1.0 : r.tone.power / (4.0 * n) + 1.0;
-    r.tone_dbfs = level(r.tone, raw_ratio, basis.split ? 2 : 4, r.tone.sigma,
-                        r.tone.power / (4.0 * n), on_tone, basis.independent);
+    // As it was found, before corrections that scale signal and noise alike.
+    const double tone_noise = r.tone.sigma * r.tone.sigma; // of one quadrature
+    const int degrees = basis.split ? 2 : 4;
+    const double raw_ratio = r.tone.power / (degrees * tone_noise) + 1.0;
+    const double tone_snr = r.tone.power / (4.0 * tone_noise);
+    r.tone_dbfs =
+        level(r.tone, raw_ratio, degrees, r.tone.sigma, tone_snr, on_tone, basis.independent);
     r.flags |= r.tone.detected ? 0U : static_cast<std::uint32_t>(flag_weak_tone);
-    r.tone_snr_db = r.tone.power > 0.0 ? decibel::from_power_ratio(r.tone.power / (4.0 * n)).db()
-                                       : not_measured;
+    r.tone_snr_db = tone_snr > 0.0 ? decibel::from_power_ratio(tone_snr).db() : not_measured;
     if (r.carrier.detected && r.tone.detected && !std::isnan(r.tone_dbfs.value)) {
         r.depth_percent = ratio_percent(r.tone_dbfs, r.carrier_dbfs);
     } else if (r.carrier.detected && !std::isnan(r.carrier_dbfs.low95)) {

@@ -15,7 +15,7 @@ namespace {
 using test::am_signal;
 using test::meter_options;
 
-constexpr std::uint64_t seeds = 1000;
+constexpr std::uint64_t seeds = 1000, many_seeds = 4000;
 
 double decibels(double amplitude) {
     return 20.0 * std::log10(amplitude);
@@ -38,6 +38,17 @@ public:
         const double held = held_percent();
         EXPECT_GE(held, allowed("coverage_percent.low")) << what << report();
         EXPECT_LE(held, allowed("coverage_percent.high")) << what << report();
+        expect_width(what);
+    }
+    void expect_long(const std::string& what) const {
+        EXPECT_GE(held_percent(), allowed("coverage_percent.long_low")) << what << report();
+        EXPECT_LE(held_percent(), allowed("coverage_percent.long_high")) << what << report();
+        for (const double tail : {below_low_, above_high_}) {
+            EXPECT_GE(100.0 * tail / records_, allowed("coverage_tail_percent.long_low"))
+                << what << report();
+            EXPECT_LE(100.0 * tail / records_, allowed("coverage_tail_percent.long_high"))
+                << what << report();
+        }
         expect_width(what);
     }
     void expect_at_the_floor(const std::string& what) const {
@@ -104,9 +115,9 @@ am_signal drawn(const experiment& e, std::uint64_t seed) {
     return s;
 }
 
-level_coverage run(const experiment& e) {
+level_coverage run(const experiment& e, std::uint64_t last_seed = seeds) {
     level_coverage all;
-    for (std::uint64_t seed = 1; seed <= seeds; ++seed) {
+    for (std::uint64_t seed = 1; seed <= last_seed; ++seed) {
         const am_signal s = drawn(e, seed);
         meter_options o;
         o.every_s = o.window_s = e.window_s; // windows do not overlap
@@ -180,6 +191,22 @@ TEST(CoverageOfLevels, BehindAChannelFilter) {
     all.carrier.expect_ordinary("carrier");
     all.tone.expect_ordinary("tone");
     all.depth.expect_ordinary("depth");
+}
+
+TEST(SlowCoverageOfLevels, FarAboveTheNoise) {
+    const level_coverage c = run({.carrier_snr_db = 45.0}, many_seeds);
+    c.carrier.expect_long("carrier");
+    c.tone.expect_long("tone");
+    c.depth.expect_long("depth");
+}
+
+TEST(SlowCoverageOfLevels, TwelveDecibelsAboveTheNoiseAndAtTheFloor) {
+    for (const double snr_db : {12.0, 5.0, 0.0}) {
+        const level_coverage c = run({.carrier_snr_db = snr_db}, many_seeds);
+        const std::string at = " at " + std::to_string(snr_db) + " dB";
+        c.carrier.expect_at_the_floor("carrier" + at);
+        c.tone.expect_at_the_floor("tone" + at);
+    }
 }
 
 } // namespace
