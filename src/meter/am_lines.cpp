@@ -1,7 +1,6 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "am_lines.hpp"
 
-#include <algorithm>
 #include <cmath>
 
 namespace tonewalk {
@@ -51,15 +50,18 @@ three_lines am_lines::at(double hz, double slope_hz_s) const {
 }
 
 double am_lines::carrier_peak_hz(double reach_hz) const {
-    constexpr int steps = 8;
-    const double low = carrier_.f0_hz() - reach_hz, high = carrier_.f0_hz() + reach_hz;
+    constexpr int steps = 24;
+    double low = carrier_.f0_hz() - reach_hz, high = carrier_.f0_hz() + reach_hz;
     double hz = carrier_.f0_hz();
-    for (int k = 0; k < steps; ++k) {
+    for (int k = 0; k < steps; ++k) { // Newton's steps, kept between what is uphill on either side
         const power_bend p = bend_of_power(carrier_.derivatives(hz));
-        if (p.bend >= 0.0) { // beyond the line's shoulder: uphill as far as can be seen
-            return p.slope > 0.0 ? high : low;
+        (p.slope > 0.0 ? low : high) = hz;
+        const double next = p.bend < 0.0 ? hz - p.slope / p.bend : low - 1.0;
+        const double before = hz;
+        hz = next > low && next < high ? next : 0.5 * (low + high);
+        if (std::abs(hz - before) < 1e-9 * reach_hz) {
+            break;
         }
-        hz = std::clamp(hz - p.slope / p.bend, low, high);
     }
     return hz;
 }

@@ -42,8 +42,6 @@ public:
     [[nodiscard]] double carrier_peak_hz(double reach_hz) const;
     [[nodiscard]] power_bend tone_bend(double carrier_hz) const;
     [[nodiscard]] double carrier_hz() const noexcept { return carrier_.f0_hz(); }
-    /// Forgets the moments.
-    void clear() noexcept { carrier_ = upper_ = lower_ = line_moments{}; }
 
 private:
     line_moments carrier_, upper_, lower_;

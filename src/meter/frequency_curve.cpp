@@ -69,10 +69,13 @@ void frequency_curve::add(const frequency_reading& reading) {
     if (reading.weight <= 0.0) {
         return;
     }
-    constexpr double share = 0.2; // of a new reading in the provisional frequency
-    provisional_hz_ = is_fresh(reading.time_s)
-                          ? *provisional_hz_ + share * (reading.hz - *provisional_hz_)
-                          : reading.hz;
+    constexpr double memory_s = 0.5;
+    if (is_fresh(reading.time_s)) {
+        const double share = std::min(1.0, (reading.time_s - *last_reading_s_) / memory_s);
+        *provisional_hz_ += share * (reading.hz - *provisional_hz_);
+    } else {
+        provisional_hz_ = reading.hz;
+    }
     last_reading_s_ = reading.time_s;
 }
 
@@ -91,6 +94,12 @@ void frequency_curve::advance(double time_s) {
             return;
         }
         make_knot(next);
+        // Across a gap without readings the value is held from one knot to another, however long it
+        // lasts.
+        const double before_end_s = std::floor((time_s - knot_s) / knot_s) * knot_s;
+        if (readings_.empty() && before_end_s > next + knot_s) {
+            make_knot(before_end_s - knot_s);
+        }
     }
 }
 

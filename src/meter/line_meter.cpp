@@ -11,6 +11,7 @@
 #include "am_lines.hpp"
 #include "frequency_curve.hpp"
 #include "level_intervals.hpp"
+#include "noise_history.hpp"
 #include "noise_lines.hpp"
 #include "strip_picture.hpp"
 #include "tonewalk/base/error.hpp"
@@ -19,9 +20,7 @@
 namespace tonewalk {
 namespace {
 
-constexpr double strong_ratio = 100.0;     // 20 dB line SNR: knows its frequency, can be split
-constexpr double least_noise_lines = 16.0; // independent ones
-constexpr double neighbour_reach_s = 10.0;
+constexpr double strong_ratio = 100.0; // 20 dB line SNR: knows its frequency, can be split
 constexpr double most_offset_hz = 2.0; // of the curve from what a record was correlated at
 constexpr double most_search_hz = 20.0;
 constexpr double opening_unknown_hz = 0.25; // half a line of the 2 s that were searched
@@ -58,7 +57,8 @@ struct line_meter::state {
           search_hz{std::min(most_search_hz, c.tone_hz.value_or(c.width_hz) / 3.0)},
           orders{orders_reaching(reach_hz, window_s, c.grid.rate_hz)}, plain{samples},
           weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}},
-          curve{0.0, opening_unknown_hz}, picture{c.width_hz, c.carrier_offset_hz} {
+          noise_about{window_s}, curve{0.0, opening_unknown_hz}, picture{c.width_hz,
+                                                                         c.carrier_offset_hz} {
         log.every_s = c.grid.every_s;
         log.window_s = window_s;
         log.width_hz = c.width_hz;
@@ -75,7 +75,6 @@ struct line_meter::state {
     [[nodiscard]] bool in_sight(const pending_record&) const noexcept;
     void search(pending_record&);
     void settle(bool stretch_over);
-    [[nodiscard]] noise_reading noise_for(const pending_record&) const;
     void settle(const pending_record&);
     static void measure_tone(const three_lines&, double independent, level_record&, record_basis&);
     [[nodiscard]] double tone_shift_hz() const;
@@ -93,6 +92,7 @@ struct line_meter::state {
     sample_runs plain, weighted; // of the record at hand
     noise_lines noise;
     std::vector<fitted_line> fitted; // in the record at hand
+    noise_history noise_about;
     frequency_curve curve;
     strip_picture picture;
     level_intervals intervals;
@@ -106,7 +106,6 @@ struct line_meter::state {
     std::vector<sample_range> non_finite;
 
     std::deque<pending_record> pending;
-    std::deque<pending_record> settled; // noise readings of the last 10 s
     std::size_t tone_records = 0;
     double tone_evidence = 0.0;               // line powers over noise
     double tone_slope = 0.0, tone_bend = 0.0; // of the tone lines' power over all records
@@ -225,14 +224,17 @@ bool line_meter::state::in_sight(const pending_record& p) const noexcept {
     return std::abs(p.peak_hz - p.lines.carrier_hz()) < 0.999 * reach_hz;
 }
 
-/// Reads the record anew where a strong line near the expected place was not what was read.
+/// Reads the record anew where a strong line near the expected place was not what was read, or
+/// only its flank was.
 void line_meter::state::search(pending_record& p) {
     constexpr int most_steps = 6;
+    const double strong = strong_ratio * std::max(p.noise.mean_power, least_noise);
     const auto [hz, power] = noise.strongest_near(p.lines.carrier_hz(), search_hz);
-    if (power < std::max(strong_ratio * p.noise.mean_power, p.carrier_power)) {
+    if (power >= std::max(strong, p.carrier_power)) {
+        p = read(p.time_s, hz);
+    } else if (p.carrier_power < strong) {
         return;
     }
-    p = read(p.time_s, hz);
     for (int k = 0; k < most_steps && !in_sight(p); ++k) {
         p = read(p.time_s, p.peak_hz);
     }
@@ -245,7 +247,7 @@ void line_meter::state::measure(sample_index first) {
     weighted.set(record, weights);
     const double time_s = stretch.start_s + set.grid.centre_s(next);
     pending_record p = read(time_s, curve.provisional_hz());
-    if (!curve.is_fresh(time_s)) { // the carrier was away: it may have drifted meanwhile
+    if (!curve.is_fresh(time_s) || !in_sight(p)) { // it may have drifted meanwhile
         search(p);
     }
     picture.add(time_s, noise.line_powers(), noise.bin_hz(), fitted);
@@ -257,6 +259,7 @@ void line_meter::state::measure(sample_index first) {
     entry.stretch = stretch.index;
     log.records.push_back(entry);
     intervals.add_null();
+    noise_about.add(time_s, stretch.index, p.noise);
     pending.push_back(std::move(p));
     curve.advance(time_s);
     settle(false);
@@ -268,60 +271,20 @@ void line_meter::state::settle(bool stretch_over) {
         const pending_record& p = pending.front();
         const double latest_s = pending.back().time_s;
         const bool curve_known = stretch_over || p.time_s < curve.known_until_s() ||
-                                 latest_s - p.time_s > neighbour_reach_s;
-        const bool noise_known = stretch_over || p.noise.independent >= least_noise_lines ||
-                                 pending.back().stretch != p.stretch ||
-                                 latest_s - p.time_s > neighbour_reach_s;
+                                 latest_s - p.time_s > noise_history::reach_s;
+        const bool noise_known =
+            stretch_over || p.noise.independent >= noise_history::least_independent ||
+            pending.back().stretch != p.stretch || latest_s - p.time_s > noise_history::reach_s;
         if (!curve_known || !noise_known) {
             return;
         }
         settle(p);
-        settled.push_back(std::move(pending.front()));
         pending.pop_front();
-        settled.back().lines.clear();
-        while (!settled.empty() && latest_s - settled.front().time_s > 2.0 * neighbour_reach_s) {
-            settled.pop_front();
-        }
     }
-}
-
-/// The record's own noise; with too few lines its nearest neighbours' in the stretch join, as few
-/// as do, each a window apart from the last so that they are independent.
-noise_reading line_meter::state::noise_for(const pending_record& p) const {
-    noise_reading total{p.noise.mean_power * p.noise.independent, p.noise.independent};
-    std::vector<const pending_record*> near;
-    for (const std::deque<pending_record>* side : {&settled, &pending}) {
-        for (const pending_record& other : *side) {
-            const double apart_s = std::abs(other.time_s - p.time_s);
-            if (other.stretch == p.stretch && other.index != p.index &&
-                apart_s <= neighbour_reach_s) {
-                near.push_back(&other);
-            }
-        }
-    }
-    std::sort(near.begin(), near.end(), [&p](const pending_record* a, const pending_record* b) {
-        return std::abs(a->time_s - p.time_s) < std::abs(b->time_s - p.time_s);
-    });
-    std::vector<double> taken{p.time_s};
-    for (const pending_record* other : near) {
-        if (total.independent >= least_noise_lines) {
-            break;
-        }
-        const bool apart = std::all_of(taken.begin(), taken.end(), [&](double t) {
-            return std::abs(t - other->time_s) > 0.999 * window_s;
-        });
-        if (apart) {
-            taken.push_back(other->time_s);
-            total.mean_power += other->noise.mean_power * other->noise.independent;
-            total.independent += other->noise.independent;
-        }
-    }
-    total.mean_power /= std::max(1.0, total.independent);
-    return total;
 }
 
 void line_meter::state::settle(const pending_record& p) {
-    const noise_reading floor = p.noise.independent >= least_noise_lines ? p.noise : noise_for(p);
+    const noise_reading floor = noise_about.at(p.time_s, p.stretch);
     const frequency_curve::value at = curve.at(p.time_s);
     three_lines lines = p.lines.at(at.hz, at.slope_hz_s);
     const auto gain = [this](double hz) { return set.response ? set.response(hz) : 1.0; };
@@ -405,6 +368,10 @@ void line_meter::state::complete() {
               .image_ratio = set.image_ratio,
               .envelope_noise_bandwidth_hz = set.envelope_in_use ? set.noise_bandwidth_hz : 0.0});
     log.strip = picture.result();
+}
+
+bool line_meter::has_records() const noexcept {
+    return !state_->log.records.empty();
 }
 
 level_log line_meter::take_result() {
