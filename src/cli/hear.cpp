@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
+#include <algorithm>
 #include <cmath>
 #include <memory>
 
@@ -101,13 +102,24 @@ carrier_curve carrier_of(const level_log& log) {
 
 /// Without any record (a recording shorter than a window) there is audio all the same.
 level_log log_or_nothing(line_meter& meter, const measurement& m) {
-    try {
+    if (meter.has_records()) {
         return meter.take_result();
-    } catch (const error&) {
-        level_log none;
-        none.carrier_offset_hz = m.found.offset_hz;
-        none.tone_hz = m.found.tone_hz.value_or(not_measured);
-        return none;
+    }
+    level_log none;
+    none.carrier_offset_hz = m.found.offset_hz;
+    none.tone_hz = m.found.tone_hz.value_or(not_measured);
+    return none;
+}
+
+/// Gaps become silence of equal length: days of it are not what anybody wants to hear.
+void refuse_endless_silence(const stream_facts& facts) {
+    constexpr double most_silence_s = 24.0 * 3600.0;
+    const double silence_s = facts.span_s() - facts.duration_s();
+    if (silence_s > most_silence_s) {
+        throw error{fault::malformed,
+                    fmt::format("has gaps of {:.1f} days together, which would all become silence",
+                                silence_s / most_silence_s),
+                    facts.name, "give --from and --until for the part to hear"};
     }
 }
 
@@ -118,10 +130,13 @@ int run_hear(const hear_options& o, const program& program) {
     output_set outputs{o.running.force};
     outputs.also(o.output);
     std::optional<output_file> json = outputs.open(o.json.json);
+    outputs.spare(o.recording.recording);
     audio_file file{choice.file};
 
     measurement m = open_measurement(o.recording, o.signal, program);
-    constexpr double every_s = 0.1, window_s = 0.2;
+    refuse_endless_silence(m.facts());
+    constexpr double every_s = 0.1, usual_window_s = 0.2, tone_cycles = 4.0;
+    const double window_s = std::max(usual_window_s, tone_cycles / m.found.tone_hz.value_or(1e9));
     line_meter::config meter_config = m.meter(m.grid(every_s, window_s));
     meter_config.envelope_in_use = choice.detector == detector_kind::envelope;
     line_meter meter{meter_config};

@@ -66,12 +66,18 @@ std::optional<detector_kind> chosen_detector(const std::string& text) {
 int run_levels(const levels_options& o, const program& program) {
     const double every_s = positive_seconds(o.every, "--every");
     const double window_s = positive_seconds(o.window, "--window");
+    constexpr double most_overlap = 100.0;
+    if (every_s * most_overlap < window_s) {
+        throw error{fault::bad_request, "is less than a hundredth of the window",
+                    "--every " + o.every, "give a longer one, or a shorter --window"};
+    }
     const std::optional<detector_kind> kind = chosen_detector(o.detector);
     const std::optional<quantity> wanted = wanted_quantity(o.quantity);
     o.json.check();
     o.running.check();
     output_set outputs{o.running.force};
     std::optional<output_file> csv = outputs.open(o.csv), json = outputs.open(o.json.json);
+    outputs.spare(o.recording.recording);
 
     measurement m = open_measurement(o.recording, o.signal, program);
     const quantity used = chosen_quantity(wanted, m.found.tone_hz.has_value());

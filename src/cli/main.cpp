@@ -9,6 +9,7 @@
 #include <fmt/core.h>
 
 #include "jobs.hpp"
+#include "print_out.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/base/near_name.hpp"
 #include "version.hpp"
@@ -55,7 +56,8 @@ std::vector<std::string> option_names(const CLI::App& app) {
 std::string unknown_words(const CLI::App& app) {
     const std::string word = app.remaining(true).front();
     std::vector<std::string> names = option_names(app);
-    if (word.front() != '-' && app.get_parent() == nullptr) {
+    const bool option = word.size() > 1 && word.front() == '-';
+    if (!option && app.get_parent() == nullptr) {
         names.clear();
         for (const job& each : jobs) {
             names.emplace_back(each.name);
@@ -66,10 +68,9 @@ std::string unknown_words(const CLI::App& app) {
         near.empty() ? fmt::format("see {} --help",
                                    app.get_parent() ? "tonewalk " + app.get_name() : "tonewalk")
                      : fmt::format("did you mean {}?", near);
-    const bool option = word.front() == '-' && word.size() > 1;
     return option                        ? fmt::format("{}: unknown option; {}", word, mend)
-           : app.get_parent() != nullptr ? fmt::format("{}: one recording only; {}", word, mend)
-                                         : fmt::format("{}: unknown job; {}", word, mend);
+           : app.get_parent() != nullptr ? fmt::format("\"{}\": one recording only; {}", word, mend)
+                                         : fmt::format("\"{}\": unknown job; {}", word, mend);
 }
 
 /// Options that take a value refuse one that looks like an option: `--csv --quiet` forgot the file.
@@ -117,7 +118,7 @@ int run(int argc, char** argv) {
         app.parse(argc, argv);
         refuse_option_like_values(deepest(app));
     } catch (const CLI::CallForHelp&) {
-        fmt::print("{}", app.help());
+        print_out(app.help());
         return 0;
     } catch (const CLI::ExtrasError&) {
         complain(unknown_words(deepest(app)));

@@ -6,6 +6,7 @@
 
 #include "jobs.hpp"
 #include "options.hpp"
+#include "print_out.hpp"
 #include "tonewalk/scene/make_recording.hpp"
 
 namespace tonewalk::cli {
@@ -27,9 +28,9 @@ int run_make(const make_options& o, const program& program) {
         return program.stopping.exit_status();
     }
     if (!o.quiet) {
-        fmt::print("{}\n{}\n{}\n{} samples, SHA-512 {}...\n", made.metadata.string(),
-                   made.data.string(), made.truth.string(), made.samples,
-                   made.sha512.substr(0, 16));
+        print_out(fmt::format("{}\n{}\n{}\n{} samples, SHA-512 {}...\n", made.metadata.string(),
+                              made.data.string(), made.truth.string(), made.samples,
+                              made.sha512.substr(0, 16)));
     }
     return 0;
 }

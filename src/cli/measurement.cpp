@@ -8,6 +8,7 @@
 #include <sys/ioctl.h>
 #include <unistd.h>
 
+#include "print_out.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/report/text_report.hpp"
 
@@ -25,9 +26,10 @@ int screen_columns(int descriptor) {
     return usual;
 }
 
-void print_to(std::FILE* stream, const std::string& text) {
-    std::fputs(text.c_str(), stream); // a reader that went away is no fault of ours
-    std::fflush(stream);
+/// Where nobody can be told of a failure any more.
+void print_error(const std::string& text) {
+    std::fputs(text.c_str(), stderr);
+    std::fflush(stderr);
 }
 
 /// Looks for the signal; a stop ends the wait for a pipe's opening.
@@ -151,6 +153,22 @@ std::optional<output_file> output_set::open(const std::string& path) {
     return output_file{path, force_};
 }
 
+void output_set::spare(const std::string& recording) const {
+    for (const std::filesystem::path& output : paths_) {
+        for (const char* ending : {"", ".sigmf-meta", ".sigmf-data", ".sigmf"}) {
+            std::filesystem::path part = recording;
+            if (*ending != '\0') { // by its base name, or beside its other half
+                part.replace_extension(ending);
+            }
+            std::error_code unknown;
+            if (std::filesystem::equivalent(output, part, unknown)) {
+                throw error{fault::bad_request, "is the recording itself", output.string(),
+                            "give the output another name"};
+            }
+        }
+    }
+}
+
 void output_set::also(const std::filesystem::path& path) {
     paths_.push_back(path);
 }
@@ -163,13 +181,14 @@ void tell(const report_context& context, const sheet& result, const running_opti
                                   .colour = colour,
                                   .info_notes = !options.quiet,
                                   .plot_column = std::move(plot_column)};
-    print_to(stream, summary_text(context, result, how));
+    const std::string summary = summary_text(context, result, how);
+    standard_output_taken ? print_error(summary) : print_out(summary);
     text_report_options for_notes = how;
     for_notes.columns = screen_columns(STDERR_FILENO);
     for_notes.colour = isatty(STDERR_FILENO) != 0 && std::getenv("NO_COLOR") == nullptr;
-    print_to(stderr, notes_text(context.notes, for_notes));
+    print_error(notes_text(context.notes, for_notes));
     if (!options.quiet) {
-        print_to(stderr, cautions_text(context.cautions, for_notes));
+        print_error(cautions_text(context.cautions, for_notes));
     }
 }
 

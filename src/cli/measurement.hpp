@@ -54,6 +54,8 @@ public:
     [[nodiscard]] std::optional<output_file> open(const std::string& path);
     void
     also(const std::filesystem::path&); ///< written by other means, but no two outputs may meet
+    /// Refuses an output that is the recording itself, --force or not: error{bad_request}.
+    void spare(const std::string& recording) const;
     void check() const { check_distinct_outputs(paths_); }
     [[nodiscard]] bool uses_standard_output() const noexcept { return standard_output_; }
 

@@ -9,7 +9,6 @@
 #include <fmt/ranges.h>
 
 #include "tonewalk/base/error.hpp"
-#include "tonewalk/base/near_name.hpp"
 
 namespace tonewalk::cli {
 namespace {
@@ -177,10 +176,6 @@ void json_options::check() const {
     if (!curves.empty()) {
         chosen("--curves", curves, {"none", "all"});
     }
-}
-
-std::optional<std::filesystem::path> given_path(const std::string& text) {
-    return text.empty() ? std::nullopt : std::optional<std::filesystem::path>{text};
 }
 
 std::size_t chosen(std::string_view option, std::string_view typed,

@@ -1,7 +1,6 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #pragma once
 
-#include <filesystem>
 #include <optional>
 #include <string>
 #include <string_view>
@@ -55,10 +54,7 @@ struct json_options {
     [[nodiscard]] bool with_curves() const { return curves != "none"; }
 };
 
-/// A path that was given, or nothing for an empty option.
-[[nodiscard]] std::optional<std::filesystem::path> given_path(const std::string&);
-
-/// One of `choices`, else error{bad_request} that lists them with the nearest first.
+/// One of `choices`, else error{bad_request} that lists them.
 std::size_t chosen(std::string_view option, std::string_view typed,
                    const std::vector<std::string_view>& choices);
 

@@ -1,9 +1,12 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "version.hpp"
 
+#include <string>
 #include <string_view>
 
 #include <fmt/core.h>
+
+#include "print_out.hpp"
 
 namespace tonewalk::cli {
 namespace {
@@ -30,15 +33,15 @@ constexpr inside libraries[] = {
 } // namespace
 
 void print_version(bool licences) {
-    fmt::print("tonewalk {}\n", TONEWALK_VERSION);
-    if (!licences) {
-        return;
+    std::string text = fmt::format("tonewalk {}\n", TONEWALK_VERSION);
+    if (licences) {
+        text +=
+            "GPL-3.0-or-later; there is no warranty, to the extent permitted by law.\n\nInside:\n";
+        for (const inside& each : libraries) {
+            text += fmt::format("  {:<26} {}\n", each.library, each.licence);
+        }
     }
-    fmt::print(
-        "GPL-3.0-or-later; there is no warranty, to the extent permitted by law.\n\nInside:\n");
-    for (const inside& each : libraries) {
-        fmt::print("  {:<26} {}\n", each.library, each.licence);
-    }
+    print_out(text);
 }
 
 } // namespace tonewalk::cli

@@ -92,6 +92,23 @@ double window::response(double bins) const noexcept {
     return sum / total;
 }
 
+double hann_overlap_correlation(double shift) noexcept {
+    const double x = std::abs(shift);
+    return x >= 1.0
+               ? 0.0
+               : (1.0 - x) * (2.0 + std::cos(two_pi * x)) / 3.0 + std::sin(two_pi * x) / two_pi;
+}
+
+overlap_inflation hann_overlap_inflation(double shift) noexcept {
+    overlap_inflation total;
+    for (double lag = shift; lag > 0.0 && lag < 1.0; lag += shift) {
+        const double correlation = hann_overlap_correlation(lag);
+        total.amplitude += 2.0 * correlation;
+        total.power += 2.0 * correlation * correlation;
+    }
+    return total;
+}
+
 window rectangular_window(std::size_t size) {
     return {size, std::array{1.0}};
 }

@@ -104,6 +104,9 @@ double noise_power(const line_spectrum& s, double tone_hz, std::size_t half) {
     return total / count * static_cast<double>(s.band.last + 1 - s.band.first);
 }
 
+// In power: distortion of 0.1 % is told to be small even where the noise is larger.
+constexpr double least_told_distortion = 1e-6;
+
 /// Level, noise and distortion of the tone at `tone_hz`; nothing where it does not stand out.
 audio_quality quality_of(const line_spectrum& s, double tone_hz, double high_hz) {
     const std::size_t half = half_width(s, tone_hz);
@@ -117,11 +120,15 @@ audio_quality quality_of(const line_spectrum& s, double tone_hz, double high_hz)
     q.level_dbfs = decibel::from_power_ratio(2.0 * tone_power).db();
     q.snr_db = decibel::from_power_ratio(tone_power / noise_power(s, tone_hz, half)).db();
     if (2.0 * tone_hz <= high_hz) {
-        double harmonics = 0.0;
+        double harmonics = 0.0, under_them = 0.0;
         for (unsigned order = 2; order <= last_harmonic && order * tone_hz <= high_hz; ++order) {
             harmonics += s.sum(s.around(order * tone_hz, half)) - floor;
+            under_them += floor;
         }
-        q.thd_percent = 100.0 * std::sqrt(std::max(0.0, harmonics) / tone_power);
+        const bool lost_in_noise =
+            harmonics < under_them && under_them > least_told_distortion * tone_power;
+        q.thd_percent =
+            lost_in_noise ? not_measured : 100.0 * std::sqrt(std::max(0.0, harmonics) / tone_power);
     }
     return q;
 }

@@ -126,7 +126,9 @@ curve thinned(const level_log& log, quantity which) {
     c.kind = "line";
     c.x_unit = "s";
     c.y_unit = "dBFS";
-    const std::size_t run = std::max<std::size_t>(1, 2 * log.records.size() / most_curve_points);
+    constexpr std::size_t points_a_run = 2;
+    const std::size_t run =
+        1 + points_a_run * log.records.size() / (most_curve_points + points_a_run);
     const auto shown = [&](std::size_t k) {
         const interval_estimate& level = level_of(log.records[k], which);
         return std::isnan(level.value) ? level.high95 : level.value;
@@ -139,8 +141,8 @@ curve thinned(const level_log& log, quantity which) {
         const std::size_t past = std::min(first + run, log.records.size());
         std::size_t low = first, high = first;
         for (std::size_t k = first + 1; k < past; ++k) {
-            low = shown(k) < shown(low) ? k : low;
-            high = shown(k) > shown(high) ? k : high;
+            low = !(shown(low) <= shown(k)) ? k : low; // a null record gives way to any
+            high = !(shown(high) >= shown(k)) ? k : high;
         }
         point(std::min(low, high));
         if (low != high) {

@@ -8,6 +8,7 @@
 
 #include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/quantile.hpp"
+#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
@@ -18,8 +19,6 @@ constexpr double least_agc_db = 0.5;
 constexpr double doubt_sigmas =
     4.0; // a whole log is searched for steps: 1.96 would find them anywhere
 constexpr double step_side_s = 10.0;
-constexpr double overlap_spread =
-    1.0 + 2.0 / 36.0;                        // chi-square of records that overlap by half (1/6)
 constexpr double least_depth_scatter = 1e-4; // relative; numbers and filters are not better
 
 template <class Test>
@@ -46,6 +45,11 @@ void note_weak(level_log& log, record_flag flag, note_code code, const char* wha
     }
 }
 
+/// Records that overlap scatter together: this many of them tell what one would.
+double overlap_spread(const level_log& log) {
+    return hann_overlap_inflation(log.every_s / log.window_s).power;
+}
+
 void note_depth_varies(level_log& log) {
     double weight = 0.0, sum = 0.0, squares = 0.0, n = 0.0;
     for (const level_record& r : log.records) {
@@ -66,8 +70,9 @@ void note_depth_varies(level_log& log) {
         return;
     }
     const double chi_square = squares - sum * sum / weight;
-    const double degrees = (n - 1.0) / overlap_spread;
-    if (chi_square / overlap_spread > chi_square_quantile(0.999, degrees)) {
+    const double spread = overlap_spread(log);
+    const double degrees = (n - 1.0) / spread;
+    if (chi_square / spread > chi_square_quantile(0.999, degrees)) {
         log.doubts.add({note_code::depth_varies, severity::warning,
                         fmt::format("tone and carrier do not fade alike: the depth "
                                     "scatters {:.1f} times as much "
@@ -104,8 +109,8 @@ struct mean_and_error {
 
 /// Mean of the noise over [first, past) and its standard error from the
 /// scatter, neighbours overlapping.
-mean_and_error noise_mean(const std::vector<level_pair>& pairs, std::size_t first,
-                          std::size_t past) {
+mean_and_error noise_mean(const std::vector<level_pair>& pairs, std::size_t first, std::size_t past,
+                          double spread) {
     const auto n = static_cast<double>(past - first);
     double sum = 0.0, squares = 0.0;
     for (std::size_t k = first; k < past; ++k) {
@@ -113,7 +118,7 @@ mean_and_error noise_mean(const std::vector<level_pair>& pairs, std::size_t firs
         squares += pairs[k].noise_db * pairs[k].noise_db;
     }
     const double variance = std::max(0.0, squares / n - sum / n * (sum / n));
-    return {sum / n, std::sqrt(variance / n * overlap_spread * n / std::max(1.0, n - 1.0))};
+    return {sum / n, std::sqrt(variance / n * spread * n / std::max(1.0, n - 1.0))};
 }
 
 /// Between the records `before` and `after`: what the carrier steps by, and the
@@ -134,10 +139,11 @@ struct step_pair {
 };
 
 step_pair step_between(const std::vector<level_pair>& pairs, std::size_t before, std::size_t after,
-                       std::size_t side) {
+                       std::size_t side, double spread) {
     const std::size_t first = before + 1 > side ? before + 1 - side : 0;
-    const mean_and_error left = noise_mean(pairs, first, before + 1);
-    const mean_and_error right = noise_mean(pairs, after, std::min(pairs.size(), after + side));
+    const mean_and_error left = noise_mean(pairs, first, before + 1, spread);
+    const mean_and_error right =
+        noise_mean(pairs, after, std::min(pairs.size(), after + side), spread);
     return {{pairs[after].carrier_db - pairs[before].carrier_db,
              std::hypot(pairs[after].carrier_sigma_db, pairs[before].carrier_sigma_db)},
             {right.mean - left.mean, std::hypot(left.error, right.error)}};
@@ -149,6 +155,7 @@ void note_gain_step(level_log& log, const std::vector<level_pair>& pairs) {
     const auto side = static_cast<std::size_t>(std::max(4.0, step_side_s / log.every_s));
     const auto across = static_cast<std::size_t>(std::ceil(log.window_s / log.every_s)) + 1;
     constexpr std::size_t least_side = 20;
+    const double spread = overlap_spread(log);
     double best_db = 0.0, best_s = 0.0;
     for (std::size_t k = least_side; k + across + least_side < pairs.size(); ++k) {
         const level_pair &before = pairs[k], &after = pairs[k + across];
@@ -156,7 +163,7 @@ void note_gain_step(level_log& log, const std::vector<level_pair>& pairs) {
         if (before.stretch != after.stretch || carrier_step_db < least_step_db / 2.0) {
             continue;
         }
-        const step_pair step = step_between(pairs, k, k + across, side);
+        const step_pair step = step_between(pairs, k, k + across, side, spread);
         const double step_db = step.both();
         if (std::abs(step_db) >= least_step_db && step.are_alike() &&
             std::abs(step_db) > std::abs(best_db)) {
@@ -199,7 +206,7 @@ void note_gain_control(level_log& log, const std::vector<level_pair>& pairs) {
     }
     const double slope = cn / cc;
     const double error =
-        std::sqrt(std::max(0.0, nn - slope * cn) / (n - 2.0) / cc * overlap_spread);
+        std::sqrt(std::max(0.0, nn - slope * cn) / (n - 2.0) / cc * overlap_spread(log));
     std::sort(carriers.begin(), carriers.end());
     const double range = quantile_sorted(carriers, 0.98) - quantile_sorted(carriers, 0.02);
     const double moved = -slope * range;

@@ -12,11 +12,11 @@
 #include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/parabola_fit.hpp"
 #include "tonewalk/maths/quantile.hpp"
+#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
 
-constexpr double overlap_correlation = 1.0 / 6.0; // of neighbouring records' amplitudes
 const double peak_reach = decibel::from_db(-1.0).power_ratio();
 const double null_reach = decibel::from_db(6.0).power_ratio();
 constexpr double least_null_windows = 6.0;
@@ -45,10 +45,11 @@ struct turn {
 
 class walk {
 public:
-    walk(std::vector<step> steps, double sigmas, const extrema_rule& rule, double window_s,
+    walk(std::vector<step> steps, double sigmas, const extrema_rule& rule, const level_log& log,
          quantity which)
         : steps_{std::move(steps)}, sigmas_{sigmas},
-          least_ratio_{rule.least_ratio}, window_s_{window_s}, which_{which} {
+          least_ratio_{rule.least_ratio}, window_s_{log.window_s},
+          overlap_{hann_overlap_inflation(log.every_s / log.window_s).amplitude}, which_{which} {
         lowest_ = steps_.empty() ? 0.0 : steps_.front().amplitude;
         for (const step& s : steps_) {
             highest_ = std::max(highest_, s.amplitude);
@@ -76,7 +77,9 @@ private:
                                      std::size_t last) const noexcept;
 
     std::vector<step> steps_;
-    double sigmas_, least_ratio_, window_s_, highest_ = 0.0, lowest_ = 0.0;
+    double sigmas_, least_ratio_, window_s_;
+    double overlap_; // variance of a mean over that of as many independent records
+    double highest_ = 0.0, lowest_ = 0.0;
     quantity which_;
 };
 
@@ -147,7 +150,7 @@ std::optional<parabola_vertex> walk::vertex(std::size_t first, std::size_t last)
     }
     // Weights from the points' own noisy powers would favour those that noise made small: use the
     // fit's.
-    std::optional<parabola_vertex> fit = fit_parabola(points, 1.0 + 2.0 * overlap_correlation);
+    std::optional<parabola_vertex> fit = fit_parabola(points, overlap_);
     for (int round = 0; fit && round < 2; ++round) {
         for (std::size_t k = first; k <= last; ++k) {
             weighted_value& p = points[k - first];
@@ -156,7 +159,7 @@ std::optional<parabola_vertex> walk::vertex(std::size_t first, std::size_t last)
             const double variance = steps_[k].sigma * steps_[k].sigma;
             p.sigma = std::sqrt(4.0 * power * variance + 2.0 * variance * variance);
         }
-        fit = fit_parabola(points, 1.0 + 2.0 * overlap_correlation);
+        fit = fit_parabola(points, overlap_);
     }
     return fit;
 }
@@ -388,8 +391,7 @@ extrema_result find_extrema(const level_log& log, quantity which, const extrema_
         while (past < all.size() && all[past].stretch == all[first].stretch) {
             ++past;
         }
-        const walk one{steps_of(all.subspan(first, past - first), which), sigmas, rule,
-                       log.window_s, which};
+        const walk one{steps_of(all.subspan(first, past - first), which), sigmas, rule, log, which};
         const std::vector<extremum> found = one.extrema();
         result.found.insert(result.found.end(), found.begin(), found.end());
         first = past;

@@ -234,6 +234,22 @@ std::string plot_text(const sheet& result, const text_report_options& options) {
     return '\n' + draw(plot, options.columns);
 }
 
+/// Of the signal only what is known: "carrier not measured" would look like a failure where merely
+/// the recording's centre is not stated.
+sheet known_part(const sheet& signal) {
+    sheet known;
+    for (const auto& item : signal.items) {
+        const auto* const entry = std::get_if<sheet_entry>(&item);
+        const bool is_null =
+            entry != nullptr && (std::holds_alternative<std::monostate>(entry->value) ||
+                                 (std::holds_alternative<double>(entry->value) &&
+                                  std::isnan(std::get<double>(entry->value))));
+        if (!is_null)
+            known.items.push_back(item);
+    }
+    return known;
+}
+
 } // namespace
 
 std::string summary_text(const report_context& context, const sheet& result,
@@ -244,7 +260,7 @@ std::string summary_text(const report_context& context, const sheet& result,
     for (const recording_summary& each : context.recordings)
         text += recording_text(each, layout);
     if (context.signal)
-        text += '\n' + printer.print(*context.signal, 0);
+        text += '\n' + printer.print(known_part(*context.signal), 0);
     text += '\n' + printer.print(result, 0);
     return text + plot_text(result, options);
 }

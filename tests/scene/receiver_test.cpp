@@ -51,7 +51,7 @@ TEST(ReceiverNoise, HasTheStatedDensityInRealSamplesToo) {
     EXPECT_NEAR(4.0 * square / 1e6 / 1e6 / 1e-9, 1.0, 7.1e-3);
 }
 
-// The definition of 2-jobs `look`: I = cos, Q = sin(wt + e), 20 log gI/gQ.
+// Definition: I = cos, Q = sin(wt + e), 20 log gI/gQ.
 TEST(IqErrors, AreTheStatedOnesByMomentsAndKeepTheWantedLine) {
     const std::vector<cf64> made =
         render_samples(quiet_carrier(-6.0, {.iq_gain_error_db = 1.0, .iq_phase_error_deg = 5.0}));

@@ -27,6 +27,15 @@ public:
 private:
     std::vector<double> values_, coefficients_;
 };
+/// Correlation of the noise that two Hann windows see whose starts lie `shift` windows apart; 1/6
+/// at half a window (F. J. Harris, Proc. IEEE 66(1), 1978, from memory; closed form derived anew).
+[[nodiscard]] double hann_overlap_correlation(double shift) noexcept;
+/// How much larger the variance of a mean of many windows is, `shift` windows apart, than of as
+/// many independent ones: of amplitudes, or of powers (whose correlations are squared).
+struct overlap_inflation {
+    double amplitude = 1.0, power = 1.0;
+};
+[[nodiscard]] overlap_inflation hann_overlap_inflation(double shift) noexcept;
 [[nodiscard]] window rectangular_window(std::size_t size);
 [[nodiscard]] window hann_window(std::size_t size);
 [[nodiscard]] window hamming_window(std::size_t size);

@@ -41,6 +41,7 @@ public:
     void end_stretch() override;
     void finish() override;
 
+    [[nodiscard]] bool has_records() const noexcept; ///< after finish()
     /// After finish(). Throws error{malformed} naming --window when no stretch held a record.
     [[nodiscard]] level_log take_result();
 

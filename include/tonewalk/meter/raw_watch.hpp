@@ -10,7 +10,7 @@
 
 namespace tonewalk {
 
-/// What the raw samples themselves say (2-jobs look; thresholds in docs/results.md).
+/// What the raw samples themselves say (thresholds in docs/results.md).
 struct raw_result {
     double rms_dbfs = not_measured, peak_dbfs = not_measured, peak_component_dbfs = not_measured;
     double dc_dbfs = not_measured;          ///< of the mean; of real samples too as they are stored

@@ -86,7 +86,8 @@ public:
     virtual void wake() noexcept = 0;
 };
 
-/// What the user says about a recording (2-jobs options); empty: take it from the recording.
+/// What the user says about a recording (the options of every job that reads one); empty: take it
+/// from the recording.
 struct recording_request {
     std::string path; ///< "-" is standard input
     std::optional<sample_format> format;

@@ -1,0 +1,26 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#include "print_out.hpp"
+
+#include <cerrno>
+#include <cstdio>
+#include <system_error>
+
+#include <fmt/core.h>
+
+#include "tonewalk/base/error.hpp"
+
+namespace tonewalk::cli {
+
+void print_out(std::string_view text) {
+    errno = 0;
+    const std::size_t written = std::fwrite(text.data(), 1, text.size(), stdout);
+    const bool flushed = std::fflush(stdout) == 0;
+    if ((written == text.size() && flushed) || errno == EPIPE) {
+        return;
+    }
+    throw error{fault::unwritable,
+                fmt::format("cannot be written ({})", std::generic_category().message(errno)),
+                "standard output", "make room, or send it elsewhere"};
+}
+
+} // namespace tonewalk::cli

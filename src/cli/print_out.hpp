@@ -1,0 +1,12 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <string_view>
+
+namespace tonewalk::cli {
+
+/// Writes to standard output at once. A reader that has gone away is no fault; anything else (a
+/// full disk) throws error{unwritable}.
+void print_out(std::string_view text);
+
+} // namespace tonewalk::cli
