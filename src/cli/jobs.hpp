@@ -7,7 +7,7 @@
 
 #include "signals.hpp"
 
-namespace CLI {
+namespace CLI { // NOLINT(readability-identifier-naming)
 class App;
 }
 

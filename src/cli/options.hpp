@@ -10,7 +10,7 @@
 #include "tonewalk/base/quantity.hpp"
 #include "tonewalk/recording/stream.hpp"
 
-namespace CLI {
+namespace CLI { // NOLINT(readability-identifier-naming)
 class App;
 }
 
