@@ -2,6 +2,7 @@
 #include "progress.hpp"
 
 #include <algorithm>
+#include <cmath>
 #include <cstdio>
 
 #include <fmt/core.h>
@@ -13,7 +14,7 @@ namespace {
 constexpr std::chrono::milliseconds quiet_start{1000}, terminal_spacing{100}, log_spacing{5000};
 
 std::string minutes_and_seconds(double seconds) {
-    const auto whole = static_cast<long>(std::max(0.0, seconds) + 0.5);
+    const auto whole = std::lround(std::max(0.0, seconds));
     return whole < 60 ? fmt::format("{} s", whole)
                       : fmt::format("{} min {:02} s", whole / 60, whole % 60);
 }
@@ -48,8 +49,8 @@ void progress_line::advance(std::int64_t samples_done, std::optional<std::int64_
 std::string progress_line::words(std::int64_t done, std::optional<std::int64_t> total) const {
     const double elapsed_s = std::chrono::duration<double>(clock::now() - start_).count();
     const double rate = static_cast<double>(done) / elapsed_s;
-    const std::string so_far = fmt::format("{:.1f} s measured, {:.1f} million samples a second",
-                                           static_cast<double>(done) / sample_rate_hz_, rate / 1e6);
+    std::string so_far = fmt::format("{:.1f} s measured, {:.1f} million samples a second",
+                                     static_cast<double>(done) / sample_rate_hz_, rate / 1e6);
     if (!total || *total <= 0 || rate <= 0.0) {
         return so_far;
     }
