@@ -46,6 +46,7 @@ straight_line robust_fit(std::vector<weighted_point> points) {
     straight_line line = fit(points);
     for (int round = 0; round < rounds && given.size() > 3; ++round) {
         std::vector<double> deviations;
+        deviations.reserve(given.size());
         for (const weighted_point& p : given) {
             deviations.push_back(std::abs(p.hz - line.hz - line.slope_hz_s * p.t));
         }
