@@ -74,11 +74,13 @@ void line_spectrum::finish() {
 }
 
 double line_spectrum::hz_of(double bin) const noexcept {
-    return (bin - static_cast<double>(power_.size() / 2)) * bin_hz();
+    const std::size_t middle = power_.size() / 2;
+    return (bin - static_cast<double>(middle)) * bin_hz();
 }
 
 std::size_t line_spectrum::bin_of(double hz) const noexcept {
-    const double bin = std::round(hz / bin_hz()) + static_cast<double>(power_.size() / 2);
+    const std::size_t middle = power_.size() / 2;
+    const double bin = std::round(hz / bin_hz()) + static_cast<double>(middle);
     return static_cast<std::size_t>(std::clamp(bin, 0.0, static_cast<double>(power_.size() - 1)));
 }
 

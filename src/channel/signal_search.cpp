@@ -79,18 +79,25 @@ void choose_width(found_signal& f, const search_request& request, const stream_f
                         "give a smaller one"};
         }
         f.width_hz = *request.width_hz;
-        if (f.tone_hz && *f.tone_hz > f.width_hz / 2.0) {
+        if (request.tone_hz && *request.tone_hz > f.width_hz / 2.0) {
             throw error{fault::malformed,
-                        fmt::format("does not hold the tone of {}", format_hz(*f.tone_hz, 6)),
+                        fmt::format("does not hold the tone of {}", format_hz(*request.tone_hz, 6)),
                         fmt::format("--width {}", format_option_hz(*request.width_hz, false)),
                         fmt::format("give {} or more",
-                                    format_option_hz(std::ceil(2.2 * *f.tone_hz), false))};
+                                    format_option_hz(std::ceil(2.2 * *request.tone_hz), false))};
+        }
+        if (f.tone_hz && *f.tone_hz > f.width_hz / 2.0) {
+            f.notes.add({note_code::no_tone, severity::warning,
+                         fmt::format("the tone of {} lies outside the width that was given",
+                                     format_hz(*f.tone_hz, 6)),
+                         "levels are the carrier's; give a larger --width for the tone's"});
+            f.tone_hz.reset();
         }
         return;
     }
     const double wanted_hz = f.tone_hz ? std::max(least_width_hz, 2.0 * harmonics_held * *f.tone_hz)
                                        : width_without_tone_hz;
-    f.width_hz = std::min(std::round(wanted_hz), room_hz);
+    f.width_hz = std::min(wanted_hz, room_hz);
     const double least_hz = f.tone_hz ? 2.0 * *f.tone_hz : 0.0;
     if (f.width_hz <= least_hz || f.width_hz <= 0.0) {
         throw error{fault::malformed,

@@ -104,8 +104,8 @@ double noise_power(const line_spectrum& s, double tone_hz, std::size_t half) {
     return total / count * static_cast<double>(s.band.last + 1 - s.band.first);
 }
 
-// In power: distortion of 0.1 % is told to be small even where the noise is larger.
-constexpr double least_told_distortion = 1e-6;
+// In power: below 1 % distortion is told to be small even where the noise is larger.
+constexpr double least_told_distortion = 1e-4;
 
 /// Level, noise and distortion of the tone at `tone_hz`; nothing where it does not stand out.
 audio_quality quality_of(const line_spectrum& s, double tone_hz, double high_hz) {

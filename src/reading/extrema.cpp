@@ -333,7 +333,8 @@ void walk::set_prominence(std::vector<extremum>& all, const std::vector<turn>& a
 
 std::vector<extremum> walk::extrema() const {
     std::vector<extremum> all;
-    std::vector<turn> at = turns();
+    const std::vector<turn> at = turns();
+    all.reserve(at.size());
     for (const turn& t : at) {
         all.push_back(placed(t));
     }
@@ -353,6 +354,7 @@ std::vector<step> steps_of(std::span<const level_record> records, quantity which
     // A record's own noise may rest on few lines and then comes out far too small now and then:
     // what the records usually have is the least.
     std::vector<double> sigmas;
+    sigmas.reserve(steps.size());
     for (const step& each : steps) {
         sigmas.push_back(each.sigma);
     }

@@ -20,7 +20,7 @@ struct audio_quality {
     double snr_db = not_measured;     ///< tone power over all in the band but tone and harmonics
     double thd_percent =
         not_measured; ///< harmonics 2 to 10 inside the band, re fundamental; NaN: none inside, or
-                      ///< lost in noise that is larger than they and than 0.1 % of the tone
+                      ///< lost in noise that is larger than they and than 1 % of the tone
 };
 [[nodiscard]] sheet describe(const audio_quality&);
 
