@@ -76,7 +76,11 @@ void level_intervals::correct_incidental_phase(level_log& log) {
 interval_estimate level_intervals::level(const line_power& line, double raw_ratio, int degrees,
                                          double unit, double line_snr, const bounds& b,
                                          double independent) {
-    const amplitude_limits::pair limits = limits_(raw_ratio, degrees, independent);
+    // Less power than 97.5 % of noise alone has would bound the line by nothing at all, and leave
+    // no bound to show: take a little more.
+    const double least_ratio = degrees == 2 ? 0.03 : 0.13;
+    const amplitude_limits::pair limits =
+        limits_(std::max(raw_ratio, least_ratio), degrees, independent);
     interval_estimate r;
     r.high95 = amplitude_db(limits.high * unit * (1.0 + b.relative) + b.absolute);
     if (!line.detected || line.power <= 0.0) {
