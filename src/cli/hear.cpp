@@ -195,22 +195,31 @@ job_action add_hear(CLI::App& app) {
     o->recording.add_to(app);
     o->signal.add_to(app);
     app.add_option("--detector", o->detector, "envelope or synchronous")
+        ->type_name("envelope|synchronous")
         ->group("The signal")
         ->capture_default_str();
-    app.add_option("-o,--output", o->output, "audio file, .wav or .flac")->required()->group(group);
+    app.add_option("-o,--output", o->output, "audio file, .wav or .flac")
+        ->type_name("FILE")
+        ->required()
+        ->group(group);
     app.add_option("--band", o->band, "LOW:HIGH of the audio; by default 50 Hz to half the width")
+        ->type_name("LOW:HIGH")
         ->group(group);
     app.add_option("--audio-rate", o->audio_rate, "samples per second, 8000 to 192000")
+        ->type_name("HZ")
         ->group(group)
         ->capture_default_str();
     app.add_option("--loudness", o->loudness,
                    "field keeps the fades; steady divides by the carrier")
+        ->type_name("field|steady")
         ->group(group)
         ->capture_default_str();
     app.add_option("--gain", o->gain,
                    "dB, positive amplifies; by default the peak stands at -1 dBFS")
+        ->type_name("DB")
         ->group(group);
     app.add_option("--sample", o->sample, "pcm16, pcm24 or float")
+        ->type_name("pcm16|pcm24|float")
         ->group(group)
         ->capture_default_str();
     o->json.add_to(app);

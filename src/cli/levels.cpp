@@ -134,19 +134,25 @@ job_action add_levels(CLI::App& app) {
     o->signal.add_to(app);
     app.add_option("--detector", o->detector,
                    "add the tone as an envelope or a synchronous detector reads it")
+        ->type_name("none|envelope|synchronous")
         ->group("The signal")
         ->capture_default_str();
     app.add_option("--quantity", o->quantity,
                    "tone or carrier: what peaks and nulls are taken from; by default the tone "
                    "where there is one")
+        ->type_name("tone|carrier")
         ->group("Records");
     app.add_option("--every", o->every, "spacing of records")
+        ->type_name("TIME")
         ->group("Records")
         ->capture_default_str();
     app.add_option("--window", o->window, "length of one record")
+        ->type_name("TIME")
         ->group("Records")
         ->capture_default_str();
-    app.add_option("--csv", o->csv, "the level log as CSV; - is standard output")->group("Outputs");
+    app.add_option("--csv", o->csv, "the level log as CSV; - is standard output")
+        ->type_name("FILE")
+        ->group("Outputs");
     o->json.add_to(app);
     o->running.add_to(app);
     return [o](const program& program) { return run_levels(*o, program); };

@@ -39,8 +39,11 @@ int run_make(const make_options& o, const program& program) {
 
 job_action add_make(CLI::App& app) {
     const auto o = std::make_shared<make_options>();
-    app.add_option("SCENE", o->scene, "scene file, see docs/jobs/make.md")->required();
+    app.add_option("SCENE", o->scene, "scene file, see docs/jobs/make.md")
+        ->type_name("FILE")
+        ->required();
     app.add_option("-o,--output", o->base, "base name of the three files that are written")
+        ->type_name("BASE")
         ->required();
     app.add_flag("--quiet", o->quiet, "hide progress and the names of what was written");
     app.add_flag("--force", o->force, "replace files that exist");

@@ -49,23 +49,34 @@ void recording_options::add_to(CLI::App& app) {
                    "SigMF recording or archive, two-channel (I, Q) or one-channel container, raw "
                    "file, or - "
                    "for raw samples on standard input")
+        ->type_name("FILE")
         ->required();
     app.add_option("--format", format,
                    "sample format of raw samples: ci16_le, cf32_le, cu8, ri16_le ...")
+        ->type_name("FORMAT")
         ->group(group);
-    app.add_option("--rate", rate, "samples per second, such as 2.4M")->group(group);
+    app.add_option("--rate", rate, "samples per second, such as 2.4M")
+        ->type_name("HZ")
+        ->group(group);
     app.add_option("--centre", centre, "frequency at 0 Hz of the recording, such as 145.2M")
+        ->type_name("HZ")
         ->group(group);
     app.add_option("--start-utc", start_utc,
                    "time of the first sample, such as 2026-05-04T09:30:00Z")
+        ->type_name("TIME")
         ->group(group);
-    app.add_option("--lane", lane, "which of several interleaved streams, from 0")->group(group);
+    app.add_option("--lane", lane, "which of several interleaved streams, from 0")
+        ->type_name("N")
+        ->group(group);
     app.add_option("--member", member, "which recording of an archive that holds several")
+        ->type_name("NAME")
         ->group(group);
     app.add_flag("--swap-iq", swap_iq, "exchange I and Q")->group(group);
     app.add_flag("--inverted", inverted, "the spectrum is mirrored")->group(group);
-    app.add_option("--from", from, "start here: 12.5, 1min, 00:01:30 or a UTC time")->group(group);
-    app.add_option("--until", until, "stop here, given likewise")->group(group);
+    app.add_option("--from", from, "start here: 12.5, 1min, 00:01:30 or a UTC time")
+        ->type_name("TIME")
+        ->group(group);
+    app.add_option("--until", until, "stop here, given likewise")->type_name("TIME")->group(group);
     app.add_flag("--verify", verify, "check the samples against the recording's SHA-512 first")
         ->group(group);
 }
@@ -108,13 +119,16 @@ void signal_options::add_to(CLI::App& app) {
            "--carrier", carrier,
            "auto; with a sign an offset from the centre (+3.2M, -12.5k); without one a frequency "
            "(145.2M), which needs a centre")
+        ->type_name("auto|HZ")
         ->group(group)
         ->capture_default_str();
     app.add_option("--tone", tone, "auto, or the test tone such as 1k")
+        ->type_name("auto|HZ")
         ->group(group)
         ->capture_default_str();
     app.add_option("--width", width,
                    "flat width of the channel, both sides together; by default from the tone")
+        ->type_name("HZ")
         ->group(group);
 }
 
@@ -137,8 +151,10 @@ void running_options::add_to(CLI::App& app) {
     const std::string group = "Running";
     app.add_option("--threads", threads,
                    "how many threads, 1 to 16; by default the machine's cores")
+        ->type_name("N")
         ->group(group);
     app.add_option("--progress", progress, "auto (on a terminal), always or never")
+        ->type_name("auto|always|never")
         ->group(group)
         ->capture_default_str();
     app.add_flag("--quiet", quiet, "hide progress and remarks; warnings and errors stay")
@@ -168,8 +184,12 @@ progress_choice running_options::progress_shown() const {
 
 void json_options::add_to(CLI::App& app) {
     const std::string group = "Outputs";
-    app.add_option("--json", json, "results as JSON; - is standard output")->group(group);
-    app.add_option("--curves", curves, "none: leave what is drawn out of the JSON")->group(group);
+    app.add_option("--json", json, "results as JSON; - is standard output")
+        ->type_name("FILE")
+        ->group(group);
+    app.add_option("--curves", curves, "none: leave what is drawn out of the JSON")
+        ->type_name("none|all")
+        ->group(group);
 }
 
 void json_options::check() const {
