@@ -32,6 +32,21 @@ interval_estimate ratio_percent(const interval_estimate& above, const interval_e
     return r;
 }
 
+/// A background is taken off in power; what it could hide is not detected but bounded.
+line_power without(const background_line& background, line_power line) {
+    line.power -= background.power;
+    line.detected = line.detected && !hidden_by(background, line.power);
+    return line;
+}
+
+/// Why a line shows only a bound.
+std::uint32_t weakness(const line_power& found, const line_power& left, record_flag weak) {
+    if (left.detected) {
+        return 0;
+    }
+    return static_cast<std::uint32_t>(found.detected ? flag_background_limited : weak);
+}
+
 } // namespace
 
 void level_intervals::complete(level_log& log, const common& c) {
@@ -109,11 +124,14 @@ void level_intervals::fill(level_log& log, level_record& r, const record_basis& 
     const double droop = 1.0 - hann_response(std::min(0.9, basis.unknown_hz * window_s));
     const bounds on_carrier{c.dc_amplitude * hann_leakage_bound(offset_bins) +
                                 c.image_ratio * carrier_amplitude *
-                                    hann_leakage_bound(2.0 * offset_bins),
+                                    hann_leakage_bound(2.0 * offset_bins) +
+                                c.background.carrier.bound,
                             droop};
-    r.carrier_dbfs = level(r.carrier, (r.carrier.power + n) / n, 2, std::sqrt(n / 2.0),
-                           r.carrier.power / n, on_carrier, basis.independent);
-    r.flags |= r.carrier.detected ? 0U : static_cast<std::uint32_t>(flag_weak_carrier);
+    const line_power carrier = without(c.background.carrier, r.carrier);
+    r.carrier_dbfs = level(carrier, (r.carrier.power + n) / n, 2, std::sqrt(n / 2.0),
+                           carrier.power / n, on_carrier, basis.independent);
+    r.flags |= weakness(r.carrier, carrier, flag_weak_carrier);
+    r.carrier = carrier;
     if (c.envelope_noise_bandwidth_hz > 0.0) {
         const double noise_in_channel =
             n / log.noise_bandwidth_hz() * c.envelope_noise_bandwidth_hz;
@@ -135,16 +153,19 @@ void level_intervals::fill(level_log& log, level_record& r, const record_basis& 
                              hann_leakage_bound(2.0 * offset_bins + tone_bins)) +
         tone_amplitude * (hann_leakage_bound(2.0 * offset_bins) +
                           hann_leakage_bound(2.0 * (offset_bins - tone_bins)));
-    const bounds on_tone{c.dc_amplitude * dc_leak + c.image_ratio * image_leak,
+    const bounds on_tone{c.dc_amplitude * dc_leak + c.image_ratio * image_leak +
+                             c.background.tone.bound,
                          droop + (basis.split ? 0.0 : incidental_bound_)};
     // As it was found, before corrections that scale signal and noise alike.
     const double tone_noise = r.tone.sigma * r.tone.sigma; // of one quadrature
     const int degrees = basis.split ? 2 : 4;
     const double raw_ratio = r.tone.power / (degrees * tone_noise) + 1.0;
-    const double tone_snr = r.tone.power / (4.0 * tone_noise);
+    const line_power tone = without(c.background.tone, r.tone);
+    const double tone_snr = tone.power / (4.0 * tone_noise);
     r.tone_dbfs =
-        level(r.tone, raw_ratio, degrees, r.tone.sigma, tone_snr, on_tone, basis.independent);
-    r.flags |= r.tone.detected ? 0U : static_cast<std::uint32_t>(flag_weak_tone);
+        level(tone, raw_ratio, degrees, r.tone.sigma, tone_snr, on_tone, basis.independent);
+    r.flags |= weakness(r.tone, tone, flag_weak_tone);
+    r.tone = tone;
     r.tone_snr_db = tone_snr > 0.0 ? decibel::from_power_ratio(tone_snr).db() : not_measured;
     if (r.carrier.detected && r.tone.detected && !std::isnan(r.tone_dbfs.value)) {
         r.depth_percent = ratio_percent(r.tone_dbfs, r.carrier_dbfs);

@@ -5,6 +5,7 @@
 #include <vector>
 
 #include "level_interval.hpp"
+#include "tonewalk/meter/background.hpp"
 #include "tonewalk/meter/level_log.hpp"
 
 namespace tonewalk {
@@ -29,6 +30,7 @@ public:
         double carrier_offset_hz = 0.0; ///< from the recording's centre
         double dc_amplitude = 0.0, image_ratio = 0.0;
         double envelope_noise_bandwidth_hz = 0.0; ///< 0: no envelope is read
+        background_lines background;
     };
     void complete(level_log&, const common&);
 

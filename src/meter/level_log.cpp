@@ -22,6 +22,7 @@ constexpr flag_name flag_names[] = {
     {flag_weak_carrier, note_code::weak_carrier},
     {flag_weak_tone, note_code::weak_tone},
     {flag_envelope_suppressed, note_code::envelope_suppressed},
+    {flag_background_limited, note_code::background_limited},
 };
 
 /// Detected levels ascending, behind the undetected ones, which count as lowest.

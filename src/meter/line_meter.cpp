@@ -57,7 +57,7 @@ struct line_meter::state {
           search_hz{std::min(most_search_hz, c.tone_hz.value_or(c.width_hz) / 3.0)},
           orders{orders_reaching(reach_hz, window_s, c.grid.rate_hz)}, plain{samples},
           weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}},
-          noise_about{window_s}, curve{0.0, opening_unknown_hz}, picture{c.width_hz,
+          noise_about{window_s}, curve{0.0, c.hold_frequency ? 0.0 : opening_unknown_hz}, picture{c.width_hz,
                                                                          c.carrier_offset_hz} {
         log.every_s = c.grid.every_s;
         log.window_s = window_s;
@@ -247,11 +247,12 @@ void line_meter::state::measure(sample_index first) {
     weighted.set(record, weights);
     const double time_s = stretch.start_s + set.grid.centre_s(next);
     pending_record p = read(time_s, curve.provisional_hz());
-    if (!curve.is_fresh(time_s) || !in_sight(p)) { // it may have drifted meanwhile
+    const bool lost = !curve.is_fresh(time_s) || !in_sight(p); // it may have drifted meanwhile
+    if (lost && !set.hold_frequency) {
         search(p);
     }
     picture.add(time_s, noise.line_powers(), noise.bin_hz(), fitted);
-    const bool strong = in_sight(p) && p.noise.independent > 0.0 &&
+    const bool strong = !set.hold_frequency && in_sight(p) && p.noise.independent > 0.0 &&
                         p.carrier_power > strong_ratio * std::max(p.noise.mean_power, least_noise);
     curve.add({time_s, p.peak_hz, strong ? p.carrier_power : 0.0});
     level_record entry;
@@ -335,7 +336,7 @@ void line_meter::state::measure_tone(const three_lines& lines, double independen
 double line_meter::state::tone_shift_hz() const {
     constexpr double least_evidence = 20.0, sigmas = 5.0;
     const double scatter = std::sqrt(2.0 * static_cast<double>(tone_records));
-    if (tone_evidence < least_evidence + sigmas * scatter || tone_bend >= 0.0) {
+    if (set.hold_frequency || tone_evidence < least_evidence + sigmas * scatter || tone_bend >= 0.0) {
         return 0.0;
     }
     return hann_offset_bins(-tone_slope / tone_bend * window_s) / window_s;
@@ -366,7 +367,8 @@ void line_meter::state::complete() {
               .carrier_offset_hz = log.carrier_offset_hz,
               .dc_amplitude = set.dc_amplitude,
               .image_ratio = set.image_ratio,
-              .envelope_noise_bandwidth_hz = set.envelope_in_use ? set.noise_bandwidth_hz : 0.0});
+              .envelope_noise_bandwidth_hz = set.envelope_in_use ? set.noise_bandwidth_hz : 0.0,
+              .background = set.background});
     log.strip = picture.result();
 }
 

@@ -23,6 +23,7 @@ enum record_flag : std::uint32_t {
     flag_weak_carrier = 1U << 2,        ///< weak-carrier: not detected, floor-limited
     flag_weak_tone = 1U << 3,           ///< weak-tone: not detected, floor-limited
     flag_envelope_suppressed = 1U << 4, ///< an envelope would read the tone 0.1 dB or more low
+    flag_background_limited = 1U << 5,  ///< the transmitter-off recording could hide it: a bound
 };
 [[nodiscard]] std::string flag_words(std::uint32_t flags);
 
@@ -53,9 +54,10 @@ struct level_log {
     double carrier_offset_hz = not_measured; ///< power-weighted mean of the curve
     double tone_hz = not_measured;           ///< refined over all records; NaN without a tone
     double width_hz = 0.0;                   ///< flat width of the channel
-    std::optional<utc_time> start_utc;       ///< of the recording's first sample
-    std::vector<double> detector_tone_dbfs;  ///< one a record, or empty
-    std::string detector_column;             ///< its JSON name
+    double common_u95_db = 0.0;        ///< part of every level's interval that all levels share
+    std::optional<utc_time> start_utc; ///< of the recording's first sample
+    std::vector<double> detector_tone_dbfs; ///< one a record, or empty
+    std::string detector_column;            ///< its JSON name
     note_set doubts;
     curve strip; ///< channel power against time and frequency
 

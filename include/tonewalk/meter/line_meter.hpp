@@ -6,6 +6,7 @@
 #include <optional>
 
 #include "tonewalk/channel/chain.hpp"
+#include "tonewalk/meter/background.hpp"
 #include "tonewalk/meter/level_log.hpp"
 #include "tonewalk/meter/record_grid.hpp"
 
@@ -30,7 +31,9 @@ public:
         double dc_amplitude = 0.0; ///< of a line at the recording's centre, full scale = 1
         double image_ratio = 0.0;  ///< amplitude of the image over the signal's
         bool envelope_in_use =
-            false; ///< an envelope is read beside: mark where noise suppresses it
+            false;                   ///< an envelope is read beside: mark where noise suppresses it
+        bool hold_frequency = false; ///< no curve: the lines stay where they are said to be
+        background_lines background; ///< taken off every record in power
         std::optional<utc_time> start_utc;
     };
     explicit line_meter(
