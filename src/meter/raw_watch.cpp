@@ -4,7 +4,6 @@
 #include <algorithm>
 #include <bit>
 #include <cmath>
-#include <numbers>
 #include <optional>
 
 #include <fmt/core.h>
@@ -78,7 +77,6 @@ void raw_watch::add(const raw_counts& counts, std::size_t samples) {
         total_.q += sums.q;
         total_.ii += sums.ii;
         total_.qq += sums.qq;
-        total_.iq += sums.iq;
         total_.peak_power = std::max(total_.peak_power, sums.peak_power);
         total_.peak_component = std::max(total_.peak_component, sums.peak_component);
     }
@@ -110,14 +108,8 @@ void raw_watch::judge_levels(raw_result& r) const {
     r.rms_dbfs = power_db(is_complex ? power_i + power_q : 2.0 * power_i);
     r.peak_dbfs = power_db(total_.peak_power);
     r.peak_component_dbfs = power_db(total_.peak_component * total_.peak_component);
+    r.headroom_db = 0.0 - r.peak_component_dbfs;
     r.dc_dbfs = power_db(mean_i * mean_i + mean_q * mean_q);
-    const double variance_i = power_i - mean_i * mean_i, variance_q = power_q - mean_q * mean_q;
-    if (is_complex && variance_i > 0.0 && variance_q > 0.0) {
-        const double covariance = total_.iq / n - mean_i * mean_q;
-        const double sine = covariance / std::sqrt(variance_i * variance_q);
-        r.iq_gain_error_db = power_db(variance_i / variance_q);
-        r.iq_phase_error_deg = std::asin(std::clamp(sine, -1.0, 1.0)) * 180.0 / std::numbers::pi;
-    }
 }
 
 void raw_watch::judge_clipping(raw_result& r) const {
@@ -141,11 +133,10 @@ sheet describe(const raw_result& r) {
     s.add("rms_dbfs", "dBFS", r.rms_dbfs);
     s.add("peak_dbfs", "dBFS", r.peak_dbfs);
     s.add("peak_component_dbfs", "dBFS", r.peak_component_dbfs);
+    s.add("headroom_db", "dB", r.headroom_db);
     s.add("clipped_samples", "",
           r.clipping_judged ? cell{static_cast<std::int64_t>(r.clipped_samples)} : cell{});
     s.add("dc_dbfs", "dBFS", r.dc_dbfs);
-    s.add("iq_gain_error_db", "dB", r.iq_gain_error_db);
-    s.add("iq_phase_error_deg", "deg", r.iq_phase_error_deg);
     return s;
 }
 

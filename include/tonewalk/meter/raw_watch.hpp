@@ -13,9 +13,8 @@ namespace tonewalk {
 /// What the raw samples themselves say (thresholds in docs/results.md).
 struct raw_result {
     double rms_dbfs = not_measured, peak_dbfs = not_measured, peak_component_dbfs = not_measured;
-    double dc_dbfs = not_measured;          ///< of the mean; of real samples too as they are stored
-    double iq_gain_error_db = not_measured; ///< 20 log gI/gQ; NaN for real samples
-    double iq_phase_error_deg = not_measured; ///< e in I = cos, Q = sin(wt + e)
+    double headroom_db = not_measured; ///< from the largest |I| or |Q| up to full scale
+    double dc_dbfs = not_measured;     ///< of the mean; of real samples too as they are stored
     std::uint64_t clipped_samples = 0; ///< components that stand on a clipped rail's outermost code
     bool clipping_judged = false;      ///< false: fewer than 64 codes, or too coarse a grid to tell
     sample_index samples = 0;
