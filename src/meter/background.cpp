@@ -56,7 +56,7 @@ background_lines background_of(const level_log& log, const std::string& where) {
         throw error{fault::malformed, "no record of the background could be measured", where,
                     "record the background with the receiver on the same frequency and rate"};
     }
-    const double overlap = hann_overlap_inflation(log.every_s / log.window_s).power;
+    const double overlap = hann_overlap_inflation(log.every_s / log.window_s).amplitude;
     background_lines lines;
     lines.carrier = mean_line(log, quantity::carrier, overlap);
     if (log.has_tone()) {

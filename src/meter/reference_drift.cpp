@@ -35,7 +35,7 @@ estimate level_at(const level_log& log, const reference_span& span) {
     }
     const double mean = sum / n;
     const double variance = std::max(0.0, squares - n * mean * mean) / (n - 1.0);
-    const double spread = hann_overlap_inflation(log.every_s / log.window_s).power;
+    const double spread = hann_overlap_inflation(log.every_s / log.window_s).amplitude;
     const double error_of_mean = std::sqrt(variance / n * spread) / mean;
     return {decibel::from_power_ratio(mean).db(),
             two_sided * db_per_relative_power * error_of_mean};
