@@ -102,6 +102,29 @@ std::string valid_utf8(std::string_view text) {
     return valid;
 }
 
+std::size_t width_of(std::string_view text) noexcept {
+    return static_cast<std::size_t>(std::count_if(text.begin(), text.end(), [](char letter) {
+        return (static_cast<unsigned char>(letter) & 0xC0U) != 0x80U;
+    }));
+}
+
+std::vector<std::string> wrapped_lines(std::string_view text, std::size_t columns,
+                                       std::size_t hanging) {
+    std::vector<std::string> lines;
+    while (!(text = trimmed(text)).empty()) {
+        const std::string_view word = text.substr(0, text.find(' '));
+        const std::size_t room = columns - (lines.size() > 1 ? std::min(columns, hanging) : 0);
+        if (!lines.empty() && width_of(lines.back()) + 1 + width_of(word) <= room) {
+            lines.back() += ' ';
+            lines.back() += word;
+        } else {
+            lines.emplace_back(word);
+        }
+        text.remove_prefix(word.size());
+    }
+    return lines;
+}
+
 std::string read_text_file(const std::filesystem::path& path) {
     std::error_code ignored;
     if (std::filesystem::is_directory(path, ignored))

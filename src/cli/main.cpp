@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
+#include <algorithm>
 #include <cstdio>
 #include <exception>
 #include <map>
@@ -7,11 +8,19 @@
 
 #include <CLI/CLI.hpp>
 #include <fmt/core.h>
+#include <fmt/ranges.h>
+#include <unistd.h>
 
+#include "completion.hpp"
+#include "help_text.hpp"
 #include "jobs.hpp"
+#include "man_page.hpp"
+#include "option_tree.hpp"
+#include "options.hpp"
 #include "print_out.hpp"
+#include "screen.hpp"
 #include "tonewalk/base/error.hpp"
-#include "tonewalk/base/near_name.hpp"
+#include "usage.hpp"
 #include "version.hpp"
 
 namespace tonewalk::cli {
@@ -38,106 +47,81 @@ constexpr job jobs[] = {
      "  tonewalk make scene.toml -o scene"},
 };
 
+constexpr const char* program_examples =
+    "  tonewalk levels walk.sigmf-meta --csv walk.csv --json walk.json\n"
+    "  tonewalk hear walk.sigmf-meta -o walk.wav\n"
+    "  receiver | tonewalk levels - --format ci16_le --rate 2.4M";
+
 void complain(const std::string& line) {
     fmt::print(stderr, "tonewalk: {}\n", line);
 }
 
-std::vector<std::string> option_names(const CLI::App& app) {
-    std::vector<std::string> names;
-    for (const CLI::Option* option : app.get_options()) {
-        for (const std::string& name : option->get_lnames()) {
-            names.push_back("--" + name);
-        }
+/// What the program does without a job.
+struct program_options {
+    bool version = false, licences = false, manual = false;
+    std::string shell;
+
+    void add_to(CLI::App& app) {
+        app.set_help_flag("-h,--help", "show this; after a job, the job's options and examples");
+        app.add_flag("--version", version, "show the version");
+        app.add_flag("--licences", licences, "with --version: whose work is inside");
+        app.add_flag("--man", manual, "print the manual page, as man reads it");
+        app.add_option("--completion", shell,
+                       "print a script that lets a shell complete the command")
+            ->type_name(fmt::format("{}", fmt::join(completion_shells, "|")));
     }
-    return names;
-}
+};
 
-/// One line for what the command line holds that no option or job takes.
-std::string unknown_words(const CLI::App& app) {
-    const std::string word = app.remaining(true).front();
-    std::vector<std::string> names = option_names(app);
-    const bool option = word.size() > 1 && word.front() == '-';
-    if (!option && app.get_parent() == nullptr) {
-        names.clear();
-        for (const job& each : jobs) {
-            names.emplace_back(each.name);
-        }
+/// Answers what needs no job: 0, or 2 where there is neither job nor question.
+int run_without_job(const program_options& o, const option_tree& tree) {
+    if (o.version) {
+        print_version(o.licences);
+    } else if (o.manual) {
+        print_out(man_page(tree));
+    } else if (!o.shell.empty()) {
+        chosen("--completion", o.shell, completion_shells);
+        print_out(completion_script(tree, o.shell));
+    } else {
+        complain("no job given; see tonewalk --help");
+        return usage_status;
     }
-    const std::string near = near_name(word, names);
-    const std::string mend =
-        near.empty() ? fmt::format("see {} --help",
-                                   app.get_parent() ? "tonewalk " + app.get_name() : "tonewalk")
-                     : fmt::format("did you mean {}?", near);
-    return option                        ? fmt::format("{}: unknown option; {}", word, mend)
-           : app.get_parent() != nullptr ? fmt::format("\"{}\": one recording only; {}", word, mend)
-                                         : fmt::format("\"{}\": unknown job; {}", word, mend);
+    return 0;
 }
 
-/// Options that take a value refuse one that looks like an option: `--csv --quiet` forgot the file.
-void refuse_option_like_values(const CLI::App& app) {
-    for (const CLI::Option* option : app.get_options()) {
-        for (const std::string& value : option->results()) {
-            if (option->get_items_expected_max() > 0 && value.rfind("--", 0) == 0 &&
-                value.size() > 2) {
-                throw error{fault::bad_request, fmt::format("needs a value, not {}", value),
-                            option->get_name(), "put the value right after the option"};
-            }
-        }
-    }
-}
-
-/// "--csv: 1 required TEXT missing" or "--tone: At Most 1 required but received 2", in plain words.
-std::string wrong_number_of_values(const std::string& complaint) {
-    const std::string option = complaint.substr(0, complaint.find(':'));
-    const bool missing = complaint.find("missing") != std::string::npos;
-    return option + (missing ? ": needs a value; put it right after the option"
-                             : ": may be given only once; leave the others out");
-}
-
-const CLI::App& deepest(const CLI::App& app) {
-    const auto chosen = app.get_subcommands();
-    return chosen.empty() ? app : *chosen.front();
+void print_help(const CLI::App& app) {
+    const option_tree tree = read_option_tree(app);
+    const std::string job = chosen_command(app).get_name();
+    const auto found = std::find_if(tree.jobs.begin(), tree.jobs.end(),
+                                    [&job](const command_facts& each) { return each.name == job; });
+    const int columns = screen_columns(STDOUT_FILENO);
+    print_out(found == tree.jobs.end() ? help_text(tree, columns) : help_text(*found, columns));
 }
 
 int run(int argc, char** argv) {
     const stop_watch stopping;
     CLI::App app{"Measurements on recordings of amplitude-modulated transmitters.", "tonewalk"};
-    app.set_help_flag("-h,--help", "show this, or after a job the job's options");
-    app.footer("tonewalk JOB --help shows a job's options and examples.");
-    bool version = false, licences = false;
-    app.add_flag("--version", version, "show the version");
-    app.add_flag("--licences", licences, "with --version: whose work is inside");
-
+    app.footer(program_examples);
+    program_options o;
+    o.add_to(app);
     std::map<const CLI::App*, job_action> actions;
     for (const job& each : jobs) {
         CLI::App* command = app.add_subcommand(each.name, each.answers);
-        command->footer(fmt::format("Examples:\n{}", each.examples));
+        command->footer(each.examples);
         actions[command] = each.add(*command);
     }
     try {
         app.parse(argc, argv);
-        refuse_option_like_values(deepest(app));
     } catch (const CLI::CallForHelp&) {
-        print_out(app.help());
+        print_help(app);
         return 0;
-    } catch (const CLI::ExtrasError&) {
-        complain(unknown_words(deepest(app)));
-        return usage_status;
-    } catch (const CLI::ArgumentMismatch& problem) {
-        complain(wrong_number_of_values(problem.what()));
-        return usage_status;
     } catch (const CLI::ParseError& problem) {
-        complain(fmt::format("{}; see tonewalk {}--help", problem.what(),
-                             &deepest(app) == &app ? "" : deepest(app).get_name() + " "));
+        complain(usage_complaint(app, problem));
         return usage_status;
     }
-    if (version) {
-        print_version(licences);
-        return 0;
-    }
+    refuse_forgotten_values(app);
+    refuse_forgotten_values(chosen_command(app));
     if (app.get_subcommands().empty()) {
-        complain("no job given; say tonewalk hear, levels or make, or see tonewalk --help");
-        return usage_status;
+        return run_without_job(o, read_option_tree(app));
     }
     try {
         return actions.at(app.get_subcommands().front())({{argv, argv + argc}, stopping});

@@ -44,9 +44,14 @@ job_action add_make(CLI::App& app) {
         ->required();
     app.add_option("-o,--output", o->base, "base name of the three files that are written")
         ->type_name("BASE")
+        ->group("Outputs")
         ->required();
-    app.add_flag("--quiet", o->quiet, "hide progress and the names of what was written");
-    app.add_flag("--force", o->force, "replace files that exist");
+    app.add_flag("--quiet", o->quiet, "hide progress and the names of what was written")
+        ->group("Running")
+        ->group("Running");
+    app.add_flag("--force", o->force, "replace files that exist")
+        ->group("Running")
+        ->group("Running");
     return [o](const program& program) { return run_make(*o, program); };
 }
 

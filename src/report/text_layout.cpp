@@ -32,25 +32,11 @@ std::string_view escape_for(ink colour) {
 
 std::string text_layout::paragraph(std::string_view text, std::size_t indent,
                                    std::size_t hanging) const {
-    std::string wrapped(indent, ' ');
-    std::size_t used = indent;
-    bool line_is_empty = true;
-    while (!(text = trimmed(text)).empty()) {
-        const std::string_view word = text.substr(0, text.find(' '));
-        const std::size_t width = width_of(word);
-        if (!line_is_empty && used + 1 + width > columns_) {
-            used = indent + hanging;
-            wrapped += '\n' + std::string(used, ' ');
-        } else if (!line_is_empty) {
-            wrapped += ' ';
-            ++used;
-        }
-        line_is_empty = false;
-        wrapped += word;
-        used += width;
-        text.remove_prefix(word.size());
-    }
-    return wrapped + '\n';
+    std::string wrapped;
+    for (const std::string& line : wrapped_lines(text, columns_ - indent, hanging))
+        wrapped +=
+            fmt::format("{}{}\n", padding(indent + (wrapped.empty() ? 0 : hanging), 0), line);
+    return wrapped.empty() ? "\n" : wrapped;
 }
 
 std::string text_layout::coloured(std::string_view text, ink colour) const {
@@ -105,12 +91,6 @@ std::string harmless(std::string_view foreign) {
         if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
             letter = '?';
     return text;
-}
-
-std::size_t width_of(std::string_view text) noexcept {
-    return static_cast<std::size_t>(std::count_if(text.begin(), text.end(), [](char letter) {
-        return (static_cast<unsigned char>(letter) & 0xC0U) != 0x80U;
-    }));
 }
 
 } // namespace tonewalk

@@ -40,7 +40,5 @@ private:
 
 /// Well-formed, in one line, without control characters.
 [[nodiscard]] std::string harmless(std::string_view foreign);
-/// Characters, not bytes.
-[[nodiscard]] std::size_t width_of(std::string_view text) noexcept;
 
 } // namespace tonewalk

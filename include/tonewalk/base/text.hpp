@@ -1,10 +1,12 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #pragma once
 
+#include <cstddef>
 #include <filesystem>
 #include <optional>
 #include <string>
 #include <string_view>
+#include <vector>
 
 namespace tonewalk {
 
@@ -27,6 +29,14 @@ namespace tonewalk {
 
 /// Well-formed UTF-8: every byte that is not part of it becomes U+FFFD.
 [[nodiscard]] std::string valid_utf8(std::string_view text);
+
+/// Characters, not bytes.
+[[nodiscard]] std::size_t width_of(std::string_view text) noexcept;
+
+/// Broken between words into lines of at most `columns` characters, those after the first of
+/// `hanging` fewer; long words stay whole. Runs of spaces become one. No words: no lines.
+[[nodiscard]] std::vector<std::string> wrapped_lines(std::string_view text, std::size_t columns,
+                                                     std::size_t hanging = 0);
 
 /// The whole of a small text file, without a UTF-8 byte-order mark. Throws error{unreadable}.
 [[nodiscard]] std::string read_text_file(const std::filesystem::path&);
