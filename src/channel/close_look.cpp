@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "carrier_parts.hpp"
+#include "channel_width.hpp"
 #include "decimator.hpp"
 #include "tonewalk/base/random.hpp"
 #include "tonewalk/maths/fir.hpp"
@@ -89,9 +90,8 @@ std::size_t transform_size(std::size_t samples) {
 } // namespace
 
 close_look::close_look(const looked_at& what, double offset_hz)
-    : offset_hz_{offset_hz}, band_low_hz_{what.facts->format.is_complex
-                                              ? -what.facts->sample_rate_hz / 2.0
-                                              : 0.0},
+    : facts_{what.facts}, offset_hz_{offset_hz},
+      band_low_hz_{what.facts->format.is_complex ? -what.facts->sample_rate_hz / 2.0 : 0.0},
       band_high_hz_{what.facts->sample_rate_hz / 2.0}, rate_hz_{what.facts->sample_rate_hz} {
     std::vector<decimator> filters = design_filters(rate_hz_);
     for (const decimator& filter : filters) {
@@ -225,6 +225,10 @@ found_carrier close_look::describe(double hz, std::optional<double> wanted_tone_
     for (const pair& p : found) {
         c.tones.push_back({p.hz, 100.0 * p.depth(power)});
     }
+    const std::optional<double> tone_hz =
+        c.tones.empty() ? std::nullopt : std::optional{c.tones.front().frequency_hz};
+    const channel_width width = automatic_width(c.offset_hz, tone_hz, *facts_);
+    c.width_hz = width.fits() ? width.hz() : not_measured;
     const double voice_top_hz = std::min(highest_voice_hz, rate_hz_ / 2.0);
     c.modulated_unsteadily = carrier_parts{samples_, rate_hz_, hz, part_s}.in_step(
         lowest_voice_hz, voice_top_hz, c.tones);

@@ -39,6 +39,7 @@ private:
     [[nodiscard]] bool in_band(double hz) const noexcept;
     [[nodiscard]] double power_at(double hz) const; // amplitude^2 of a line there
 
+    const stream_facts* facts_;
     double offset_hz_, band_low_hz_, band_high_hz_; // of the recording
     double rate_hz_ = 0.0;
     std::vector<cf32> samples_;

@@ -31,7 +31,6 @@ std::size_t choose_decimation(double rate_hz, double width_hz) {
 }
 
 double widest_hz(std::span<const channel_plan> plans) {
-    assert(!plans.empty());
     double widest = 0.0;
     for (const channel_plan& plan : plans) {
         widest = std::max(widest, plan.width_hz);
@@ -59,10 +58,12 @@ struct direct_front_end::scratch final : workspace {
     std::vector<float> real, imaginary;
 };
 
-direct_front_end::direct_front_end(const stream_facts& facts, std::span<const channel_plan> plans)
-    : converter_{facts}, frame_bytes_{facts.frame_bytes()}, input_rate_hz_{facts.sample_rate_hz} {
+direct_front_end::direct_front_end(const stream_facts& facts, std::span<const channel_plan> plans,
+                                   cf64 image_ratio)
+    : converter_{facts, image_ratio}, frame_bytes_{facts.frame_bytes()}, input_rate_hz_{
+                                                                             facts.sample_rate_hz} {
     const double width_hz = widest_hz(plans);
-    decimation_ = choose_decimation(input_rate_hz_, width_hz);
+    decimation_ = plans.empty() ? 1 : choose_decimation(input_rate_hz_, width_hz);
     output_rate_hz_ = input_rate_hz_ / static_cast<double>(decimation_);
     cell_ = rounded_up(least_cell_samples, decimation_);
     low_pass_ = decimation_ == 1

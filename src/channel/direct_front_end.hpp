@@ -12,7 +12,7 @@ namespace tonewalk {
 /// forms.
 class direct_front_end final : public front_end {
 public:
-    direct_front_end(const stream_facts&, std::span<const channel_plan>);
+    direct_front_end(const stream_facts&, std::span<const channel_plan>, cf64 image_ratio);
     [[nodiscard]] std::size_t lead() const noexcept override { return low_pass_.size() - 1; }
     [[nodiscard]] std::size_t cell() const noexcept override { return cell_; }
     [[nodiscard]] std::size_t decimation() const noexcept override { return decimation_; }

@@ -7,7 +7,6 @@
 #include <numbers>
 
 #include "tonewalk/maths/quantile.hpp"
-#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
@@ -23,23 +22,13 @@ double median_of_three(double a, double b, double c) {
 } // namespace
 
 line_spectrum::line_spectrum(std::size_t size, double rate_hz)
-    : rate_hz_{rate_hz}, window_(size), power_(size, 0.0), transform_{size} {
-    const window shape = blackman_harris_window(size);
-    noise_bins_ = shape.noise_bandwidth_bins();
-    const double scale = 1.0 / (shape.coherent_gain() * static_cast<double>(size));
-    std::transform(shape.values().begin(), shape.values().end(), window_.begin(),
-                   [scale](double w) { return static_cast<float>(w * scale); });
+    : rate_hz_{rate_hz}, power_(size, 0.0), transform_{size} {
+    noise_bins_ = transform_->noise_bins();
 }
 
 void line_spectrum::add(std::span<const cf32> segment) {
     const std::size_t size = power_.size(), half = size / 2;
-    assert(segment.size() == size);
-    const std::span<cf32> in = transform_->input();
-    for (std::size_t n = 0; n < size; ++n) {
-        in[n] = {segment[n].real() * window_[n], segment[n].imag() * window_[n]};
-    }
-    transform_->run();
-    const std::span<const cf32> out = transform_->output();
+    const std::span<const cf32> out = transform_->run(segment);
     for (std::size_t k = 0; k < size; ++k) { // the negative frequencies first
         const cf32 z = out[k < half ? k + size - half : k - half];
         const double re = static_cast<double>(z.real()), im = static_cast<double>(z.imag());
@@ -50,11 +39,25 @@ void line_spectrum::add(std::span<const cf32> segment) {
 
 void line_spectrum::finish() {
     transform_.reset();
-    window_ = {};
     const double segments = static_cast<double>(std::max<std::size_t>(1, segments_));
     for (double& p : power_) {
         p /= segments;
     }
+    find_noise();
+}
+
+void line_spectrum::merge(const line_spectrum& other) {
+    assert(other.size() == size() && segments_ + other.segments_ > 0);
+    const double share =
+        static_cast<double>(other.segments_) / static_cast<double>(segments_ + other.segments_);
+    for (std::size_t k = 0; k < power_.size(); ++k) {
+        power_[k] += share * (other.power_[k] - power_[k]);
+    }
+    segments_ += other.segments_;
+    find_noise();
+}
+
+void line_spectrum::find_noise() {
     noise_run_ = std::clamp<std::size_t>(power_.size() / 8, 8, most_noise_run);
     std::vector<double> medians;
     for (std::size_t first = 0; first < power_.size(); first += noise_run_) {
@@ -64,6 +67,7 @@ void line_spectrum::finish() {
     }
     // One segment's powers are exponential, whose median is ln 2 of the mean; many segments' come
     // to meet it.
+    const double segments = static_cast<double>(std::max<std::size_t>(1, segments_));
     const double share = 1.0 - (1.0 - std::numbers::ln2) / segments;
     noise_.resize(medians.size());
     for (std::size_t k = 0; k < medians.size(); ++k) { // a crowd of lines lifts one run: not three
@@ -71,6 +75,10 @@ void line_spectrum::finish() {
         const double right = medians[std::min(k + 1, medians.size() - 1)];
         noise_[k] = std::max(median_of_three(left, medians[k], right) / share, least_power);
     }
+}
+
+double line_spectrum::floor_density() const {
+    return median(noise_) / (noise_bins_ * bin_hz());
 }
 
 double line_spectrum::hz_of(double bin) const noexcept {

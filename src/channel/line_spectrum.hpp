@@ -6,9 +6,9 @@
 #include <span>
 #include <vector>
 
+#include "line_transform.hpp"
 #include "tonewalk/base/decibel.hpp"
 #include "tonewalk/base/sample.hpp"
-#include "tonewalk/maths/fft.hpp"
 
 namespace tonewalk {
 
@@ -21,11 +21,12 @@ inline const double mirror_ratio = decibel::from_db(12.0).power_ratio();
 /// to the highest, with the noise near each line.
 class line_spectrum {
 public:
-    /// Averages transforms of `size` samples, Blackman-Harris windows.
+    /// Averages transforms of `size` samples.
     line_spectrum(std::size_t size, double rate_hz);
     [[nodiscard]] std::size_t size() const noexcept { return power_.size(); }
     void add(std::span<const cf32> segment); ///< size() samples
     void finish();                           ///< averages, and finds the local noise; no more add()
+    void merge(const line_spectrum&);        ///< averages with another finished one of equal size
 
     [[nodiscard]] double bin_hz() const noexcept {
         return rate_hz_ / static_cast<double>(power_.size());
@@ -39,6 +40,8 @@ public:
     [[nodiscard]] double noise_density(double hz) const noexcept { ///< full scale^2 per Hz
         return noise(bin_of(hz)) / (noise_bins_ * bin_hz());
     }
+    /// White noise under everything: the median of all neighbourhoods, full scale^2 per Hz.
+    [[nodiscard]] double floor_density() const;
     /// Highest within its main lobe, and 12 dB over the local noise.
     [[nodiscard]] bool is_line(std::size_t bin) const noexcept;
     /// The strongest line from `low_hz` to `high_hz`.
@@ -52,10 +55,11 @@ public:
     [[nodiscard]] peak peak_at(std::size_t bin) const noexcept;
 
 private:
-    double rate_hz_, noise_bins_;
-    std::vector<float> window_; // scaled so that a line reads its amplitude
+    void find_noise();
+
+    double rate_hz_, noise_bins_ = 0.0;
     std::vector<double> power_, noise_;
-    std::optional<fft> transform_; // while segments are added
+    std::optional<line_transform> transform_; // while segments are added
     std::size_t segments_ = 0, noise_run_ = 1;
 };
 

@@ -5,22 +5,13 @@
 #include <cmath>
 
 #include "close_look.hpp"
+#include "segments.hpp"
 
 namespace tonewalk {
 namespace {
 
-constexpr std::size_t least_transform = 256, most_transform = std::size_t{1} << 18;
-constexpr std::size_t segments_enough = 16; // fewer, and they overlap by half
 constexpr std::size_t most_close_looks = 10;
 const double image_ratio_limit = decibel::from_db(-20.0).power_ratio();
-
-std::size_t survey_size(std::size_t frames) {
-    std::size_t size = least_transform;
-    while (2 * size <= frames / 4 && 2 * size <= most_transform) {
-        size *= 2;
-    }
-    return std::min(size, std::max<std::size_t>(frames, 1));
-}
 
 struct candidate {
     double hz = 0.0, power = 0.0;
@@ -92,20 +83,15 @@ private:
 } // namespace
 
 line_spectrum survey(const looked_at& what) {
-    const std::size_t size = survey_size(what.frames);
-    const bool enough = what.frames / size >= segments_enough;
-    const std::size_t advance = enough ? size : std::max<std::size_t>(1, size / 2);
-    line_spectrum spectrum{size, what.facts->sample_rate_hz};
-    std::vector<cf32> segment(size);
-    for (std::size_t first = 0; first + size <= what.frames; first += advance) {
-        what.convert(first, segment);
-        spectrum.add(segment);
-    }
+    line_spectrum spectrum{segment_size(what.frames), what.facts->sample_rate_hz};
+    for_each_segment(what, [&](std::span<const cf32> segment) { spectrum.add(segment); });
     spectrum.finish();
     return spectrum;
 }
 
-std::vector<found_carrier> carriers_in(const looked_at& what, const line_spectrum& survey) {
+std::vector<found_carrier> carriers_in(const searched& s) {
+    const looked_at& what = s.look.what;
+    const line_spectrum& survey = s.spectrum;
     std::vector<found_carrier> carriers;
     const sideband_judge judge{survey};
     std::size_t looks = 0;
@@ -139,6 +125,9 @@ std::vector<found_carrier> carriers_in(const looked_at& what, const line_spectru
     std::sort(carriers.begin(), carriers.end(), [](const found_carrier& a, const found_carrier& b) {
         return a.level_dbfs > b.level_dbfs;
     });
+    for (found_carrier& c : carriers) {
+        c.offset_hz += what.centre_shift_hz;
+    }
     return carriers;
 }
 

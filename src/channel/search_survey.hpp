@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #pragma once
 
+#include <utility>
 #include <vector>
 
 #include "line_spectrum.hpp"
@@ -15,8 +16,15 @@ inline constexpr double centre_bins = 3.0;
 /// The averaged spectrum of the whole band.
 [[nodiscard]] line_spectrum survey(const looked_at&);
 
+/// What was searched, and what its spectrum showed.
+struct searched {
+    explicit searched(opening o) : look{std::move(o)}, spectrum{survey(look.what)} {}
+    opening look;
+    line_spectrum spectrum;
+};
+
 /// The carriers among the lines of a survey, strongest first: not images, not sidebands; at the
 /// centre only with a mirrored tone pair.
-[[nodiscard]] std::vector<found_carrier> carriers_in(const looked_at&, const line_spectrum& survey);
+[[nodiscard]] std::vector<found_carrier> carriers_in(const searched&);
 
 } // namespace tonewalk

@@ -84,7 +84,6 @@ private:
     pass_report report_;
 
     std::uint64_t committed_ = 0; // blocks; from here on: of the committing worker
-    sample_index outputs_ = 0;    // of the front end in this stretch
     open_end end_;
     std::chrono::steady_clock::time_point told_{};
 };
@@ -296,16 +295,11 @@ void pass::commit(slot& done) {
     watch_->add(done.counts, block.count);
     for (std::size_t k = 0; k < chains_.size(); ++k) {
         chains_[k]->add({.iq = done.filtered[k],
-                         .first_output = outputs_,
                          .samples = static_cast<sample_index>(block.count),
                          .stretch = block.stretch,
                          .ends_stretch = block.ends_stretch,
                          .held = front_->holds(k, block.stretch),
                          .non_finite = done.counts.non_finite});
-    }
-    outputs_ += static_cast<sample_index>(front_->outputs(block));
-    if (block.ends_stretch) {
-        outputs_ = 0;
     }
     report_.samples += static_cast<sample_index>(block.count);
     remember_end(block);

@@ -226,10 +226,33 @@ void write_chunk(chunk_values<Value>& values, float scale, bool inverted,
                   static_cast<float>(values.q()[n]) * q_scale};
 }
 
+/// z - k conj(z) over 1 - |k|^2, as what I and Q give to I and Q.
+class image_remover {
+public:
+    explicit image_remover(cf64 ratio) noexcept
+        : wanted_{ratio != cf64{}}, i_to_i_{single(1.0 - ratio.real(), ratio)},
+          crossed_{single(-ratio.imag(), ratio)}, q_to_q_{single(1.0 + ratio.real(), ratio)} {}
+    void run(std::span<cf32> samples) const noexcept {
+        if (!wanted_)
+            return;
+        for (cf32& z : samples)
+            z = {i_to_i_ * z.real() + crossed_ * z.imag(),
+                 crossed_ * z.real() + q_to_q_ * z.imag()};
+    }
+
+private:
+    static float single(double part, cf64 ratio) noexcept {
+        return static_cast<float>(part / (1.0 - std::norm(ratio)));
+    }
+    bool wanted_;
+    float i_to_i_, crossed_, q_to_q_;
+};
+
 struct conversion {
     layout where;
     unsigned code_shift = 0;
     bool inverted = false;
+    image_remover image;
 };
 
 // One cell, or all there is when nothing is counted.
@@ -250,6 +273,7 @@ void convert_cell(const conversion& how, const std::byte* frames, std::span<cf32
             read_chunk<Stored>(from, how.where, count, values);
         drop_non_finite(values, first + static_cast<sample_index>(done), first, counts);
         write_chunk(values, static_cast<float>(scale), how.inverted, out.subspan(done, count));
+        how.image.run(out.subspan(done, count));
         if (!counts)
             continue;
         adder.add(values);
@@ -284,10 +308,12 @@ void raw_counts::clear() noexcept {
     positive = negative = {};
 }
 
-sample_converter::sample_converter(const stream_facts& facts)
+sample_converter::sample_converter(const stream_facts& facts, cf64 image_ratio)
     : format_{facts.format}, lanes_{facts.lanes}, lane_{facts.lane}, swap_iq_{facts.swap_iq},
-      inverted_{facts.inverted} {
+      inverted_{facts.inverted}, image_ratio_{image_ratio} {
     assert(lane_ < lanes_);
+    assert(std::norm(image_ratio_) < 1.0);
+    assert(format_.is_complex || image_ratio_ == cf64{});
     const auto bits = static_cast<unsigned>(8 * format_.component_bytes());
     if (!format_.is_float() && facts.code_bits != 0 && facts.code_bits < bits)
         code_shift_ = bits - facts.code_bits;
@@ -320,7 +346,8 @@ void sample_converter::run(std::span<const std::byte> frames, std::span<cf32> ou
                   .is_complex = format_.is_complex,
                   .reversed = format_.big_endian != (std::endian::native == std::endian::big)},
         .code_shift = code_shift_,
-        .inverted = inverted_};
+        .inverted = inverted_,
+        .image = image_remover{image_ratio_}};
     with_stored_type(format_.type, [&](auto stored) {
         for (std::size_t done = 0; done < out.size(); done += cell)
             convert_cell<decltype(stored)>(how, frames.data() + done * how.where.stride,

@@ -40,15 +40,13 @@ struct channel_run {
         raw_counts counts;
         counts.cells.reserve(cells_a_block);
         counts.non_finite.reserve(cells_a_block);
-        sample_index outputs = 0;
         while (auto block = source.claim(slot, front->lead())) {
             source.fill(*block);
             std::vector<cf32> iq(front->outputs(*block));
             const std::span<cf32> out{iq};
             front->process(*block, *space, counts, std::span{&out, 1});
-            chain.add({iq, outputs, static_cast<sample_index>(block->count), block->stretch,
+            chain.add({iq, static_cast<sample_index>(block->count), block->stretch,
                        block->ends_stretch, front->holds(0, block->stretch), counts.non_finite});
-            outputs = block->ends_stretch ? 0 : outputs + static_cast<sample_index>(iq.size());
             front_iq.insert(front_iq.end(), iq.begin(), iq.end());
         }
         chain.finish();

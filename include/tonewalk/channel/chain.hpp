@@ -10,9 +10,8 @@ namespace tonewalk {
 
 /// Front-end output of one channel for one block.
 struct channel_block {
-    std::span<const cf32> iq;      ///< carrier near 0 Hz, at the front end's output rate
-    sample_index first_output = 0; ///< index of iq[0] among the outputs of its stretch
-    sample_index samples = 0;      ///< input samples that this block brought
+    std::span<const cf32> iq; ///< carrier near 0 Hz, at the front end's output rate
+    sample_index samples = 0; ///< input samples that this block brought
     std::uint32_t stretch = 0;
     bool ends_stretch = false;
     bool held = true; ///< false: the stretch does not hold this channel, iq is zeros

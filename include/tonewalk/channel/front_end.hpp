@@ -3,10 +3,12 @@
 
 #include <complex>
 #include <memory>
+#include <optional>
 #include <span>
 #include <vector>
 
 #include "tonewalk/base/sample.hpp"
+#include "tonewalk/channel/iq_balance.hpp"
 #include "tonewalk/channel/plan.hpp"
 #include "tonewalk/recording/convert.hpp"
 #include "tonewalk/recording/stream.hpp"
@@ -25,9 +27,10 @@ public:
 class front_end {
 public:
     virtual ~front_end() = default;
-    /// Throws error{malformed} where no stretch holds a plan's channel.
-    static std::unique_ptr<const front_end> make(const stream_facts&,
-                                                 std::span<const channel_plan>);
+    /// Without plans it only counts raw samples; `mend` takes the receiver's image out before the
+    /// filters. Throws error{malformed} where no stretch holds a plan's channel.
+    static std::unique_ptr<const front_end> make(const stream_facts&, std::span<const channel_plan>,
+                                                 const std::optional<iq_balance>& mend = {});
 
     [[nodiscard]] virtual std::size_t
     lead() const noexcept = 0; ///< history samples that a block wants

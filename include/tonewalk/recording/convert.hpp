@@ -43,10 +43,13 @@ struct raw_counts {
 
 /// Turns stored frames into complex samples: the lane picked, integers scaled by 2^(bits-1)
 /// (unsigned less 2^(bits-1) first), real samples r to 2r + 0j (the analytic signal's gain), I and
-/// Q exchanged, spectrum mirrored (conjugate), non-finite samples to zero.
+/// Q exchanged, spectrum mirrored (conjugate), non-finite samples to zero; last, the receiver's
+/// image taken out: z - k conj(z) over 1 - |k|^2, k being the image's ratio to the signal. Counts
+/// are those of the samples as recorded.
 class sample_converter {
 public:
-    explicit sample_converter(const stream_facts&);
+    /// `image_ratio` below 1 in magnitude; 0: nothing is taken out. Real samples have no image.
+    explicit sample_converter(const stream_facts&, cf64 image_ratio = {});
     /// out.size() samples from frames.size()/frame_bytes >= out.size() frames.
     void convert(std::span<const std::byte> frames, std::span<cf32> out) const noexcept;
     /// The same, filling `counts`: one cell_sums per `cell` samples (the last may be shorter);
@@ -62,6 +65,7 @@ private:
     std::size_t lanes_, lane_;
     unsigned code_shift_ = 0;
     bool swap_iq_, inverted_;
+    cf64 image_ratio_;
 };
 
 } // namespace tonewalk

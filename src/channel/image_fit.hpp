@@ -1,0 +1,35 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <optional>
+#include <vector>
+
+#include "line_spectrum.hpp"
+#include "search_opening.hpp"
+#include "tonewalk/channel/iq_balance.hpp"
+
+namespace tonewalk {
+
+/// Finds the receiver's image ratio k from strong lines and what stands at their mirror places: an
+/// image is k times the conjugate of its line in every segment, through fades and modulation, and k
+/// is the same for all lines. A signal of its own at a mirror place turns against the line, or
+/// disagrees with the other lines; a scatter beyond the noise is taken into the uncertainty whole.
+class image_fit {
+public:
+    /// Adds one look with its survey; real samples add nothing.
+    void add(const looked_at&, const line_spectrum& survey);
+    /// Nothing where no line suited: 8 bins of the survey or more from 0 Hz and the band's edges,
+    /// 20 dB over the noise at its mirror place, 10 dB over what stands there.
+    [[nodiscard]] std::optional<iq_balance> result() const;
+
+private:
+    /// One line over one look.
+    struct group {
+        cf64 ratio;
+        double variance = 0.0; ///< complex: of both components together
+        bool steady = false;   ///< its segments agree within the noise
+    };
+    std::vector<group> groups_;
+};
+
+} // namespace tonewalk

@@ -1,0 +1,35 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+#pragma once
+
+#include <algorithm>
+#include <vector>
+
+#include "search_opening.hpp"
+
+namespace tonewalk {
+
+/// How what is looked at is cut up for a survey: 256 to 2^18 samples, four segments at least.
+[[nodiscard]] inline std::size_t segment_size(std::size_t frames) noexcept {
+    constexpr std::size_t least = 256, most = std::size_t{1} << 18;
+    std::size_t size = least;
+    while (2 * size <= frames / 4 && 2 * size <= most) {
+        size *= 2;
+    }
+    return std::min(size, std::max<std::size_t>(frames, 1));
+}
+
+/// Hands each segment's samples to `use`, in order; fewer than 16 overlap by half.
+template <class Use>
+void for_each_segment(const looked_at& what, Use use) {
+    constexpr std::size_t enough = 16;
+    const std::size_t size = segment_size(what.frames);
+    const std::size_t advance =
+        what.frames / size >= enough ? size : std::max<std::size_t>(1, size / 2);
+    std::vector<cf32> segment(size);
+    for (std::size_t first = 0; first + size <= what.frames; first += advance) {
+        what.convert(first, segment);
+        use(std::span<const cf32>{segment});
+    }
+}
+
+} // namespace tonewalk
