@@ -1,6 +1,9 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "tonewalk/base/sheet.hpp"
 
+#include <algorithm>
+#include <iterator>
+
 #include <utility>
 
 namespace tonewalk {
@@ -36,6 +39,12 @@ sheet& sheet::add(std::string key, sheet part) {
 
 sheet& sheet::add(curve drawn) {
     curves.push_back(std::move(drawn));
+    return *this;
+}
+
+sheet& sheet::join(sheet part) {
+    std::move(part.items.begin(), part.items.end(), std::back_inserter(items));
+    std::move(part.curves.begin(), part.curves.end(), std::back_inserter(curves));
     return *this;
 }
 

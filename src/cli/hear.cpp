@@ -160,9 +160,9 @@ int run_hear(const hear_options& o, const program& program) {
     spool.close();
 
     level_log log = log_or_nothing(meter, m);
-    add_level_notes(log, log.has_tone() ? quantity::tone : quantity::carrier);
-    const report_context context = context_of(m, pass, program, log, "hear", o.detector,
-                                              log.has_tone() ? quantity::tone : quantity::carrier);
+    const quantity used = log.has_tone() ? quantity::tone : quantity::carrier;
+    add_level_notes(log, used);
+    const report_context context = context_of(m, pass, program, log, {"hear", o.detector, used});
     choice.options.start_s = start_s;
     choice.options.audio_samples =
         audio_length(context.recordings.front().span_s, choice.options.audio_rate_hz);
@@ -183,7 +183,7 @@ int run_hear(const hear_options& o, const program& program) {
         write_json(*json, context, result, {.curves = o.json.with_curves()});
         json->commit();
     }
-    tell(context, result, o.running, outputs.uses_standard_output(), "");
+    tell(context, result, o.running, {.standard_output_taken = outputs.uses_standard_output()});
     return status_of(pass, program);
 }
 

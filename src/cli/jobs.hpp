@@ -28,6 +28,7 @@ using job_action = std::function<int(const program&)>;
 /// Each adds its options to the job's own command and returns what to do once they are read.
 job_action add_hear(CLI::App&);
 job_action add_levels(CLI::App&);
+job_action add_look(CLI::App&);
 job_action add_make(CLI::App&);
 
 } // namespace tonewalk::cli

@@ -1,12 +1,16 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
+#include <array>
 #include <memory>
 
 #include <CLI/CLI.hpp>
+#include <fmt/core.h>
 
+#include "background_run.hpp"
 #include "measurement.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/detect/detector.hpp"
 #include "tonewalk/meter/level_notes.hpp"
+#include "tonewalk/meter/reference_drift.hpp"
 #include "tonewalk/meter/tone_reading.hpp"
 #include "tonewalk/reading/extrema.hpp"
 #include "tonewalk/report/csv_report.hpp"
@@ -20,7 +24,8 @@ struct levels_options {
     signal_options signal;
     running_options running;
     json_options json;
-    std::string detector = "none", quantity, every = "100ms", window = "200ms", csv;
+    std::string detector = "none", quantity, every = "100ms", window = "200ms", background, csv;
+    std::vector<std::string> references;
 };
 
 double positive_seconds(const std::string& text, const char* option) {
@@ -63,33 +68,102 @@ std::optional<detector_kind> chosen_detector(const std::string& text) {
     }
 }
 
-int run_levels(const levels_options& o, const program& program) {
-    const double every_s = positive_seconds(o.every, "--every");
-    const double window_s = positive_seconds(o.window, "--window");
+/// The options, read and judged before any file is opened.
+struct levels_choice {
+    double every_s = 0.0, window_s = 0.0;
+    std::optional<detector_kind> detector;
+    std::optional<quantity> wanted;
+    std::vector<moment_span> references; ///< none or two
+};
+
+std::vector<moment_span> read_references(const std::vector<std::string>& texts) {
+    if (!texts.empty() && texts.size() != 2) {
+        throw error{fault::bad_request, fmt::format("is given {} times", texts.size()),
+                    "--reference", "give it twice: one before and one after the walk"};
+    }
+    std::vector<moment_span> spans;
+    for (const std::string& text : texts) {
+        spans.push_back(parse_span(text, "--reference"));
+    }
+    return spans;
+}
+
+levels_choice read_choice(const levels_options& o) {
+    levels_choice c;
+    c.every_s = positive_seconds(o.every, "--every");
+    c.window_s = positive_seconds(o.window, "--window");
     constexpr double most_overlap = 100.0;
-    if (every_s * most_overlap < window_s) {
+    if (c.every_s * most_overlap < c.window_s) {
         throw error{fault::bad_request, "is less than a hundredth of the window",
                     "--every " + o.every, "give a longer one, or a shorter --window"};
     }
-    const std::optional<detector_kind> kind = chosen_detector(o.detector);
-    const std::optional<quantity> wanted = wanted_quantity(o.quantity);
+    c.detector = chosen_detector(o.detector);
+    c.wanted = wanted_quantity(o.quantity);
+    c.references = read_references(o.references);
+    if (o.background == "-") {
+        throw error{fault::bad_request, "cannot be standard input", "--background -",
+                    "give a recording in a file"};
+    }
+    return c;
+}
+
+/// Where the references lie in the recording that is open.
+std::array<reference_span, 2> placed(const std::vector<moment_span>& spans,
+                                     const std::vector<std::string>& texts,
+                                     const stream_facts& facts) {
+    std::array<reference_span, 2> out;
+    for (std::size_t k = 0; k < 2; ++k) {
+        out[k] = {seconds_into(facts, spans[k].from, "--reference"),
+                  seconds_into(facts, spans[k].until, "--reference")};
+        const bool ascends = out[k].from_s < out[k].until_s;
+        if (!ascends || (k > 0 && out[k].from_s < out[k - 1].until_s)) {
+            throw error{fault::bad_request,
+                        ascends ? "begins before the first one ends" : "ends before it begins",
+                        "--reference " + texts[k], "give the earlier moment first"};
+        }
+    }
+    return out;
+}
+
+/// Peaks and nulls, summary and everything else that the log gives.
+sheet result_of(level_log& log, quantity used, const found_signal& found) {
+    const extrema_result extrema = find_extrema(log, used);
+    log.doubts.merge(extrema.doubts);
+    sheet result = describe(log);
+    result.add(describe(extrema));
+    result.add("summary", describe(summarise(log, used)));
+    result.add(found.spectrum);
+    return result;
+}
+
+int run_levels(const levels_options& o, const program& program) {
+    const levels_choice choice = read_choice(o);
     o.json.check();
     o.running.check();
     output_set outputs{o.running.force};
     std::optional<output_file> csv = outputs.open(o.csv), json = outputs.open(o.json.json);
     outputs.spare(o.recording.recording);
+    outputs.spare(o.background);
 
     measurement m = open_measurement(o.recording, o.signal, program);
-    const quantity used = chosen_quantity(wanted, m.found.tone_hz.has_value());
-    const record_grid grid = m.grid(every_s, window_s);
+    const quantity used = chosen_quantity(choice.wanted, m.found.tone_hz.has_value());
+    std::optional<std::array<reference_span, 2>> references;
+    if (!choice.references.empty()) {
+        references = placed(choice.references, o.references, m.facts());
+    }
+    const record_grid grid = m.grid(choice.every_s, choice.window_s);
     line_meter::config meter_config = m.meter(grid);
-    meter_config.envelope_in_use = kind == detector_kind::envelope;
+    meter_config.envelope_in_use = choice.detector == detector_kind::envelope;
+    if (!o.background.empty()) {
+        meter_config.background =
+            run_background(o.background, o.recording, m, meter_config, o.running, program);
+    }
     line_meter meter{meter_config};
     m.chain->listen(meter);
     std::unique_ptr<tone_reading> reading;
-    if (kind && m.found.tone_hz) {
+    if (choice.detector && m.found.tone_hz) {
         reading = std::make_unique<tone_reading>(
-            tone_reading::config{.detector = *kind,
+            tone_reading::config{.detector = *choice.detector,
                                  .width_hz = m.found.width_hz,
                                  .grid = grid,
                                  .tone_hz = *m.found.tone_hz,
@@ -104,15 +178,20 @@ int run_levels(const levels_options& o, const program& program) {
         log.detector_column = reading->column_key();
     }
     add_level_notes(log, used);
-    const extrema_result extrema = find_extrema(log, used);
-    log.doubts.merge(extrema.doubts);
-
-    sheet result = describe(log);
-    result.add(describe(extrema));
-    result.add("summary", describe(summarise(log, used)));
-    result.add(m.found.spectrum);
-    const report_context context =
-        context_of(m, pass, program, log, "levels", kind ? o.detector : std::string{}, used);
+    add_background_note(log, used);
+    std::optional<reference_drift> drift;
+    if (references) {
+        drift = remove_drift(log, *references);
+    }
+    sheet result = result_of(log, used, m.found);
+    if (drift) {
+        result.add("reference", describe(*drift));
+    }
+    if (!o.background.empty()) {
+        result.add("background", describe(meter_config.background));
+    }
+    const report_context context = context_of(
+        m, pass, program, log, {"levels", choice.detector ? o.detector : std::string{}, used});
     if (csv) {
         write_csv(*csv, *find_table(result, "log"));
         csv->commit();
@@ -121,8 +200,9 @@ int run_levels(const levels_options& o, const program& program) {
         write_json(*json, context, result, {.curves = o.json.with_curves()});
         json->commit();
     }
-    tell(context, result, o.running, outputs.uses_standard_output(),
-         used == quantity::tone ? "tone_dbfs" : "carrier_dbfs");
+    tell(context, result, o.running,
+         {.standard_output_taken = outputs.uses_standard_output(),
+          .plot_column = used == quantity::tone ? "tone_dbfs" : "carrier_dbfs"});
     return status_of(pass, program);
 }
 
@@ -150,6 +230,16 @@ job_action add_levels(CLI::App& app) {
         ->type_name("TIME")
         ->group("Records")
         ->capture_default_str();
+    app.add_option("--reference", o->references,
+                   "FROM:UNTIL of a steady reference, given twice, before and after: what drifted "
+                   "meanwhile is taken off")
+        ->type_name("FROM:UNTIL")
+        ->allow_extra_args(false)
+        ->group("Corrections");
+    app.add_option("--background", o->background,
+                   "recording with the transmitter off: what stands there is taken off in power")
+        ->type_name("FILE")
+        ->group("Corrections");
     app.add_option("--csv", o->csv, "the level log as CSV; - is standard output")
         ->type_name("FILE")
         ->group("Outputs");

@@ -2,13 +2,12 @@
 #include "measurement.hpp"
 
 #include <cstdio>
-#include <cstdlib>
 
 #include <fmt/core.h>
-#include <sys/ioctl.h>
 #include <unistd.h>
 
 #include "print_out.hpp"
+#include "screen.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/report/text_report.hpp"
 
@@ -17,36 +16,10 @@ namespace {
 
 constexpr int input_failed_status = 3;
 
-int screen_columns(int descriptor) {
-    constexpr int usual = 80, least = 40;
-    winsize size{};
-    if (ioctl(descriptor, TIOCGWINSZ, &size) == 0 && size.ws_col > 0) {
-        return std::max<int>(least, size.ws_col);
-    }
-    return usual;
-}
-
 /// Where nobody can be told of a failure any more.
 void print_error(const std::string& text) {
     std::fputs(text.c_str(), stderr);
     std::fflush(stderr);
-}
-
-/// Looks for the signal; a stop ends the wait for a pipe's opening.
-found_signal find_unless_stopped(block_source& source, const search_request& request,
-                                 const std::stop_token& stop) {
-    const std::stop_callback wake{stop, [&source] { source.wake(); }};
-    try {
-        found_signal found = find_signal(source, request);
-        if (!stop.stop_requested()) {
-            return found;
-        }
-    } catch (const error&) { // a cut opening holds too little, or nothing
-        if (!stop.stop_requested()) {
-            throw;
-        }
-    }
-    throw stopped_early{};
 }
 
 } // namespace
@@ -72,12 +45,7 @@ line_meter::config measurement::meter(const record_grid& grid) const {
     return c;
 }
 
-measurement open_measurement(const recording_options& recording, const signal_options& signal,
-                             const program& program) {
-    const search_request request{
-        .carrier = signal.carrier_hz(), .tone_hz = signal.tone_hz(), .width_hz = signal.width_hz()};
-    std::unique_ptr<block_source> source = open_recording(recording.request());
-    found_signal found = find_unless_stopped(*source, request, program.stopping.token());
+measurement measurement_of(std::unique_ptr<block_source> source, found_signal found) {
     const stream_facts& facts = source->facts();
     auto front = front_end::make(facts, {&found.plan, 1});
     auto chain = std::make_unique<channel_chain>(*front, 0, found.plan, facts);
@@ -85,10 +53,25 @@ measurement open_measurement(const recording_options& recording, const signal_op
             raw_watch{facts}};
 }
 
+measurement measurement_of(std::unique_ptr<block_source> source) {
+    const stream_facts& facts = source->facts();
+    return {std::move(source), {}, front_end::make(facts, {}), nullptr, raw_watch{facts}};
+}
+
+measurement open_measurement(const recording_options& recording, const signal_options& signal,
+                             const program& program) {
+    const search_request request{
+        .carrier = signal.carrier_hz(), .tone_hz = signal.tone_hz(), .width_hz = signal.width_hz()};
+    std::unique_ptr<block_source> source = open_recording(recording.request());
+    found_signal found =
+        unless_stopped(*source, program, [&] { return find_signal(*source, request); });
+    return measurement_of(std::move(source), std::move(found));
+}
+
 pass_report run(measurement& m, const running_options& options, const program& program) {
     progress_line progress{options.progress_shown(), m.facts().sample_rate_hz};
-    chain* const chains[] = {m.chain.get()};
-    return run_pass(*m.source, *m.front, chains, m.watch,
+    chain* const one = m.chain.get();
+    return run_pass(*m.source, *m.front, {&one, m.chain ? 1U : 0U}, m.watch,
                     {.stop = program.stopping.token(),
                      .progress = &progress,
                      .threads = options.thread_count()});
@@ -106,33 +89,20 @@ int status_of(const pass_report& pass, const program& program) {
     return program.stopping.exit_status();
 }
 
-report_context context_of(const measurement& m, const pass_report& pass, const program& program,
-                          const level_log& log, std::string job, std::string detector,
-                          quantity used) {
+report_context context_of(const stream_facts& facts, const pass_report& pass,
+                          const program& program, std::string job) {
     report_context c;
     c.version = TONEWALK_VERSION;
     c.command = program.command;
     c.job = std::move(job);
     const bool partial = pass.end != pass_end::complete;
-    c.recordings.push_back(summarise(m.facts(), pass.samples, partial));
-    sheet signal;
-    const auto& centre_hz = m.facts().centre_hz;
-    signal.add("carrier_hz", "Hz", centre_hz ? cell{*centre_hz + log.carrier_offset_hz} : cell{});
-    signal.add("carrier_offset_hz", "Hz", log.carrier_offset_hz);
-    signal.add("tone_hz", "Hz", log.tone_hz);
-    signal.add("channel_width_hz", "Hz", m.found.width_hz);
-    signal.add("detector", "", detector.empty() ? cell{} : cell{std::move(detector)});
-    signal.add("quantity", "", std::string{used == quantity::tone ? "tone" : "carrier"});
-    c.signal = std::move(signal);
-    c.notes.merge(m.facts().notes);
-    if (!centre_hz) {
+    c.recordings.push_back(summarise(facts, pass.samples, partial));
+    c.notes.merge(facts.notes);
+    if (!facts.centre_hz) {
         c.notes.add({note_code::centre_unknown, severity::info,
                      "the recording's centre frequency is not known",
-                     "carrier_hz is null; give --centre"});
+                     "carrier frequencies are offsets from it; give --centre"});
     }
-    c.notes.merge(m.found.notes);
-    c.notes.merge(m.watch.result().doubts);
-    c.notes.merge(log.doubts);
     if (partial) {
         c.notes.add({note_code::partial, severity::warning,
                      pass.end == pass_end::stopped
@@ -140,6 +110,24 @@ report_context context_of(const measurement& m, const pass_report& pass, const p
                          : "the recording could not be read to its end: " + pass.failure,
                      "figures hold for the part that was measured"});
     }
+    return c;
+}
+
+report_context context_of(const measurement& m, const pass_report& pass, const program& program,
+                          const level_log& log, const signal_words& words) {
+    report_context c = context_of(m.facts(), pass, program, words.job);
+    sheet signal;
+    const auto& centre_hz = m.facts().centre_hz;
+    signal.add("carrier_hz", "Hz", centre_hz ? cell{*centre_hz + log.carrier_offset_hz} : cell{});
+    signal.add("carrier_offset_hz", "Hz", log.carrier_offset_hz);
+    signal.add("tone_hz", "Hz", log.tone_hz);
+    signal.add("channel_width_hz", "Hz", m.found.width_hz);
+    signal.add("detector", "", words.detector.empty() ? cell{} : cell{words.detector});
+    signal.add("quantity", "", std::string{words.used == quantity::tone ? "tone" : "carrier"});
+    c.signal = std::move(signal);
+    c.notes.merge(m.found.notes);
+    c.notes.merge(m.watch.result().doubts);
+    c.notes.merge(log.doubts);
     return c;
 }
 
@@ -174,18 +162,19 @@ void output_set::also(const std::filesystem::path& path) {
 }
 
 void tell(const report_context& context, const sheet& result, const running_options& options,
-          bool standard_output_taken, std::string plot_column) {
-    std::FILE* const stream = standard_output_taken ? stderr : stdout;
-    const bool colour = isatty(fileno(stream)) != 0 && std::getenv("NO_COLOR") == nullptr;
+          const telling& how_told) {
+    std::FILE* const stream = how_told.standard_output_taken ? stderr : stdout;
+    const bool colour = shows_colour(fileno(stream));
     const text_report_options how{.columns = screen_columns(fileno(stream)),
                                   .colour = colour,
                                   .info_notes = !options.quiet,
-                                  .plot_column = std::move(plot_column)};
+                                  .verdict_first = how_told.verdict_first,
+                                  .plot_column = how_told.plot_column};
     const std::string summary = summary_text(context, result, how);
-    standard_output_taken ? print_error(summary) : print_out(summary);
+    how_told.standard_output_taken ? print_error(summary) : print_out(summary);
     text_report_options for_notes = how;
     for_notes.columns = screen_columns(STDERR_FILENO);
-    for_notes.colour = isatty(STDERR_FILENO) != 0 && std::getenv("NO_COLOR") == nullptr;
+    for_notes.colour = shows_colour(STDERR_FILENO);
     print_error(notes_text(context.notes, for_notes));
     if (!options.quiet) {
         print_error(cautions_text(context.cautions, for_notes));

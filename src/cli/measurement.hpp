@@ -9,6 +9,7 @@
 
 #include "jobs.hpp"
 #include "options.hpp"
+#include "tonewalk/base/error.hpp"
 #include "tonewalk/base/output_file.hpp"
 #include "tonewalk/channel/channel_chain.hpp"
 #include "tonewalk/channel/signal_search.hpp"
@@ -31,6 +32,30 @@ struct measurement {
     [[nodiscard]] record_grid grid(double every_s, double window_s) const noexcept;
     [[nodiscard]] line_meter::config meter(const record_grid&) const;
 };
+/// The channel of a signal that is known already, in the recording that is open.
+[[nodiscard]] measurement measurement_of(std::unique_ptr<block_source>, found_signal);
+
+/// For raw samples alone: no channel.
+[[nodiscard]] measurement measurement_of(std::unique_ptr<block_source>);
+
+/// What `find` gives; a stop ends its wait for a pipe's opening: throws stopped_early.
+template <class Find>
+[[nodiscard]] auto unless_stopped(block_source& source, const program& program, Find find) {
+    const std::stop_token stop = program.stopping.token();
+    const std::stop_callback wake{stop, [&source] { source.wake(); }};
+    try {
+        auto found = find();
+        if (!stop.stop_requested()) {
+            return found;
+        }
+    } catch (const error&) { // a cut opening holds too little, or nothing
+        if (!stop.stop_requested()) {
+            throw;
+        }
+    }
+    throw stopped_early{};
+}
+
 /// Throws stopped_early when a signal comes before the opening is complete.
 [[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&,
                                            const program&);
@@ -41,10 +66,19 @@ struct measurement {
 /// How a pass ended, as an exit status: 0, 3 where input failed, 130 or 143 where it was stopped.
 [[nodiscard]] int status_of(const pass_report&, const program&);
 
-/// What every report says beside its result. `detector` and `used` are shown under "signal".
+/// What every report says beside its result: the recording, and what it and the pass give reason to
+/// note.
+[[nodiscard]] report_context context_of(const stream_facts&, const pass_report&, const program&,
+                                        std::string job);
+
+/// What a report calls the signal that was measured.
+struct signal_words {
+    std::string job, detector; ///< detector: empty for none
+    quantity used = quantity::tone;
+};
+/// The same with the signal, and with all notes that finding and measuring it gave.
 [[nodiscard]] report_context context_of(const measurement&, const pass_report&, const program&,
-                                        const level_log&, std::string job, std::string detector,
-                                        quantity used);
+                                        const level_log&, const signal_words&);
 
 /// The outputs of a job, opened (and so checked) before measuring.
 class output_set {
@@ -64,9 +98,14 @@ private:
     std::vector<std::filesystem::path> paths_;
 };
 
+/// How people are told.
+struct telling {
+    bool standard_output_taken = false; ///< it carries a result
+    std::string plot_column{};          ///< of the log; empty: no plot
+    bool verdict_first = false;         ///< warnings before the figures
+};
 /// Summary, notes and cautions for people: the summary on standard output, or on standard error
-/// where that carries a result; notes on standard error.
-void tell(const report_context&, const sheet& result, const running_options&,
-          bool standard_output_taken, std::string plot_column);
+/// where that is taken; notes on standard error.
+void tell(const report_context&, const sheet& result, const running_options&, const telling&);
 
 } // namespace tonewalk::cli

@@ -198,6 +198,22 @@ void json_options::check() const {
     }
 }
 
+moment_span parse_span(const std::string& text, std::string_view option) {
+    // Moments hold colons themselves; written alike, both have as many.
+    const auto colons = std::count(text.begin(), text.end(), ':');
+    if (colons % 2 == 0) {
+        throw error{fault::bad_request, "is not a part of the recording",
+                    fmt::format("{} {}", option, text),
+                    "write FROM:UNTIL, both alike, such as 0s:20s or 00:10:00:30"};
+    }
+    std::size_t middle = 0;
+    for (auto k = colons / 2 + 1; k > 0; --k) {
+        middle = text.find(':', middle) + 1;
+    }
+    return {parse_moment(text.substr(0, middle - 1), option),
+            parse_moment(text.substr(middle), option)};
+}
+
 std::size_t chosen(std::string_view option, std::string_view typed,
                    const std::vector<std::string_view>& choices) {
     const auto found = std::find(choices.begin(), choices.end(), typed);

@@ -54,6 +54,12 @@ struct json_options {
     [[nodiscard]] bool with_curves() const { return curves != "none"; }
 };
 
+/// A part of a recording, FROM:UNTIL, both ends written alike. Throws error{bad_request}.
+struct moment_span {
+    moment from, until;
+};
+[[nodiscard]] moment_span parse_span(const std::string& text, std::string_view option);
+
 /// One of `choices`, else error{bad_request} that lists them.
 std::size_t chosen(std::string_view option, std::string_view typed,
                    const std::vector<std::string_view>& choices);

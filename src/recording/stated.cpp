@@ -48,30 +48,8 @@ void apply_centre(const recording_request& request, stated_facts& stated, stream
         stretch.centre_hz = request.centre_hz;
 }
 
-// Seconds from the recording's first sample.
-double seconds_of(const moment& when, const stream_facts& facts, const char* option) {
-    double seconds = 0.0;
-    if (const auto* const offset_s = std::get_if<double>(&when)) {
-        seconds = *offset_s;
-    } else if (facts.start_utc) {
-        seconds =
-            std::chrono::duration<double>(std::get<utc_time>(when) - *facts.start_utc).count();
-    } else {
-        throw error{fault::bad_request,
-                    fmt::format("{} is a time of day, and the recording "
-                                "does not say when it starts",
-                                option),
-                    shown(facts.name), "give --start-utc, or seconds from the first sample"};
-    }
-    if (!(seconds >= 0.0))
-        throw error{std::holds_alternative<double>(when) ? fault::bad_request : fault::malformed,
-                    fmt::format("{} lies before the recording's first sample", option),
-                    shown(facts.name), "give a later time"};
-    return seconds;
-}
-
 sample_index position_of(const moment& when, const stream_facts& facts, const char* option) {
-    const double position = seconds_of(when, facts, option) * facts.sample_rate_hz;
+    const double position = seconds_into(facts, when, option) * facts.sample_rate_hz;
     constexpr double beyond_all = 9e15;
     return std::llround(std::min(position, beyond_all));
 }
@@ -137,6 +115,27 @@ void note_overridden(note_set& notes, const std::vector<std::string>& overridden
 }
 
 } // namespace
+
+double seconds_into(const stream_facts& facts, const moment& when, std::string_view option) {
+    double seconds = 0.0;
+    if (const auto* const offset_s = std::get_if<double>(&when)) {
+        seconds = *offset_s;
+    } else if (facts.start_utc) {
+        seconds =
+            std::chrono::duration<double>(std::get<utc_time>(when) - *facts.start_utc).count();
+    } else {
+        throw error{fault::bad_request,
+                    fmt::format("{} is a time of day, and the recording "
+                                "does not say when it starts",
+                                option),
+                    shown(facts.name), "give --start-utc, or seconds from the first sample"};
+    }
+    if (!(seconds >= 0.0))
+        throw error{std::holds_alternative<double>(when) ? fault::bad_request : fault::malformed,
+                    fmt::format("{} lies before the recording's first sample", option),
+                    shown(facts.name), "give a later time"};
+    return seconds;
+}
 
 void note_odd_tail(note_set& notes, std::int64_t bytes, std::size_t frame_bytes) {
     if (bytes == 0)

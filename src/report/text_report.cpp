@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "tonewalk/report/text_report.hpp"
 
+#include <algorithm>
 #include <cmath>
 
 #include <fmt/format.h>
@@ -93,9 +94,8 @@ private:
 
     [[nodiscard]] std::string print(const sheet_table& table, std::size_t indent) const {
         if (table.form == table_form::as_columns || table.rows == 0)
-            return fmt::format("\n{}{}: {} records\n", std::string(indent, ' '),
-                               label_of(table.key),
-                               table.rows == 0 ? "no" : fmt::format("{}", table.rows));
+            return fmt::format("\n{}{}: {}\n", std::string(indent, ' '), label_of(table.key),
+                               table.rows == 0 ? "none" : fmt::format("{} records", table.rows));
         std::string text = heading(label_of(table.key), indent);
         const std::size_t shown = std::min(table.rows, table_rows_);
         const std::string grid = layout_.grid(grid_of(table, shown), indent + 2);
@@ -250,6 +250,42 @@ sheet known_part(const sheet& signal) {
     return known;
 }
 
+/// "gain control: why not" for each part that could not be judged: its first entry is null, and it
+/// says what was missing as its evidence.
+std::string unjudged_text(const sheet& result, const text_layout& layout) {
+    std::string text;
+    for (const auto& item : result.items) {
+        const auto* const group = std::get_if<sheet_group>(&item);
+        if (group == nullptr || group->list)
+            continue;
+        const sheet& part = group->parts.front();
+        const cell* const evidence = part.find("evidence");
+        const auto* const first = std::get_if<sheet_entry>(&part.items.front());
+        if (evidence != nullptr && first != nullptr &&
+            std::holds_alternative<std::monostate>(first->value))
+            text += layout.paragraph(fmt::format("not judged: {}: {}", label_of(group->key),
+                                                 harmless(std::get<std::string>(*evidence))),
+                                     2, 2);
+    }
+    return text;
+}
+
+/// How many doubts, and for each what was seen and what to do; and what could not be judged.
+std::string verdict_text(const note_set& notes, const sheet& result, const text_layout& layout) {
+    strings doubts;
+    for (const note& each : notes.all())
+        if (each.level == severity::warning)
+            doubts.push_back(layout.coloured(layout.paragraph(name(each.code), 2), ink::strong) +
+                             layout.paragraph("seen: " + harmless(each.text), 4, 2) +
+                             layout.paragraph("do: " + harmless(each.advice), 4, 2));
+    const std::string headline = doubts.empty()
+                                     ? "no doubt: nothing seen speaks against its levels\n"
+                                 : doubts.size() == 1 ? "1 doubt\n"
+                                                      : fmt::format("{} doubts\n", doubts.size());
+    return '\n' + layout.coloured(headline, doubts.empty() ? ink::strong : ink::alarm) +
+           fmt::format("{}", fmt::join(doubts, "")) + unjudged_text(result, layout);
+}
+
 } // namespace
 
 std::string summary_text(const report_context& context, const sheet& result,
@@ -259,6 +295,8 @@ std::string summary_text(const report_context& context, const sheet& result,
     std::string text;
     for (const recording_summary& each : context.recordings)
         text += recording_text(each, layout);
+    if (options.verdict_first)
+        text += verdict_text(context.notes, result, layout);
     if (context.signal)
         text += '\n' + printer.print(known_part(*context.signal), 0);
     text += '\n' + printer.print(result, 0);
@@ -270,7 +308,7 @@ std::string notes_text(const note_set& notes, const text_report_options& options
     std::string text;
     for (const note& each : notes.all()) {
         const bool warns = each.level == severity::warning;
-        if (!warns && !options.info_notes)
+        if (warns ? options.verdict_first : !options.info_notes)
             continue;
         const std::string advice = each.advice.empty() ? "" : "; " + each.advice;
         const std::string line =

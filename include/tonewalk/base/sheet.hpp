@@ -71,6 +71,7 @@ struct sheet {
     sheet& add(sheet_table);
     sheet& add(std::string key, sheet part);
     sheet& add(curve);
+    sheet& join(sheet part); ///< all that `part` holds, after what is here
     [[nodiscard]] const cell*
     find(std::string_view key) const noexcept; ///< a top-level entry, or null
 };

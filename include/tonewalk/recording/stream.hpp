@@ -6,10 +6,11 @@
 #include <optional>
 #include <span>
 #include <string>
-#include <variant>
+#include <string_view>
 #include <vector>
 
 #include "tonewalk/base/note.hpp"
+#include "tonewalk/base/quantity.hpp"
 #include "tonewalk/base/sample.hpp"
 #include "tonewalk/base/time.hpp"
 #include "tonewalk/recording/sample_format.hpp"
@@ -96,10 +97,14 @@ struct recording_request {
     std::optional<unsigned> lane;
     std::string member;
     bool swap_iq = false, inverted = false;
-    std::optional<std::variant<double, utc_time>> from, until; ///< base/quantity moment
+    std::optional<moment> from, until;
     bool verify = false;
     int pipe_descriptor = 0; ///< where "-" reads; tests set it
 };
+/// Seconds from the recording's first sample, gaps included. Throws error{bad_request} for a time of
+/// day where the recording does not say when it starts, error{malformed} before its first sample.
+[[nodiscard]] double seconds_into(const stream_facts&, const moment&, std::string_view option);
+
 /// Throws tonewalk::error naming the file, the field or byte, and the mend.
 [[nodiscard]] std::unique_ptr<block_source> open_recording(const recording_request&);
 

@@ -14,12 +14,14 @@ struct text_report_options {
     int columns = 80;             ///< of the screen; from 40 up everything fits
     bool colour = false;          ///< a little, by terminal escapes
     bool info_notes = true;       ///< false: warnings alone
+    bool verdict_first = false;   ///< warnings stand in the summary, before any figure
     std::string plot_column = {}; ///< of the table "log": "tone_dbfs"; empty: no plot
     std::size_t table_rows = 20;  ///< longer tables are cut, saying so
 };
 
-/// The result for people: what was measured, entries one below the other with their uncertainty,
-/// tables, a small plot of the log. Control characters of foreign text are replaced.
+/// The result for people: what was measured, what speaks against it where asked for, entries one
+/// below the other with their uncertainty, tables, a small plot of the log. Control characters of
+/// foreign text are replaced.
 [[nodiscard]] std::string summary_text(const report_context&, const sheet& result,
                                        const text_report_options&);
 
