@@ -11,6 +11,11 @@ TEST(Error, IsOneLineOfWhereWhatAndMend) {
     EXPECT_STREQ((error{fault::malformed, "what", "", ""}.what()), "what");
 }
 
+TEST(Error, StaysOneLineWhateverItQuotes) {
+    const error failure{fault::malformed, "is\n\x1B[31mred", "a\r\x7F.toml", "mend\tit"};
+    EXPECT_STREQ(failure.what(), "a??.toml: is??[31mred; mend?it");
+}
+
 TEST(Error, MapsEveryFaultToItsExitStatus) {
     const auto status = [](fault kind) { return error{kind, "", "", ""}.exit_status(); };
     EXPECT_EQ(status(fault::bad_request), 2);
