@@ -22,4 +22,11 @@ iq_balance balance_from_image(cf64 image_ratio, double image_ratio_u95) noexcept
             .phase_error_deg_u95 = deg_per_rad * relative_u95};
 }
 
+sheet describe(const iq_balance& b) {
+    sheet s;
+    s.add("iq_gain_error_db", "dB", estimate{b.gain_error_db, b.gain_error_db_u95});
+    s.add("iq_phase_error_deg", "deg", estimate{b.phase_error_deg, b.phase_error_deg_u95});
+    return s;
+}
+
 } // namespace tonewalk

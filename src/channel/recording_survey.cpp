@@ -167,12 +167,9 @@ recording_survey survey_recording(block_source& source, const search_request& re
 }
 
 sheet describe(const recording_survey& r, const stream_facts& facts) {
-    const iq_balance balance = r.balance.value_or(iq_balance{});
     sheet page;
     page.add("noise_density_dbfs_hz", "dBFS/Hz", cell{r.noise_density_dbfs_hz});
-    page.add("iq_gain_error_db", "dB", estimate{balance.gain_error_db, balance.gain_error_db_u95});
-    page.add("iq_phase_error_deg", "deg",
-             estimate{balance.phase_error_deg, balance.phase_error_deg_u95});
+    page.join(describe(r.balance.value_or(iq_balance{})));
     sheet_group carriers{.key = "carriers", .parts = {}, .list = true};
     for (const found_carrier& c : r.carriers) {
         carriers.parts.push_back(describe(c, facts));

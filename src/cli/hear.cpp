@@ -178,6 +178,7 @@ int run_hear(const hear_options& o, const program& program) {
 
     sheet result = describe(audio);
     result.add("tone", describe(quality.result()));
+    result.join(describe_mending(m));
     result.add(m.found.spectrum);
     if (json) {
         write_json(*json, context, result, {.curves = o.json.with_curves()});

@@ -184,6 +184,7 @@ int run_levels(const levels_options& o, const program& program) {
         drift = remove_drift(log, *references);
     }
     sheet result = result_of(log, used, m.found);
+    result.join(describe_mending(m));
     if (drift) {
         result.add("reference", describe(*drift));
     }

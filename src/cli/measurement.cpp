@@ -47,7 +47,7 @@ line_meter::config measurement::meter(const record_grid& grid) const {
 
 measurement measurement_of(std::unique_ptr<block_source> source, found_signal found) {
     const stream_facts& facts = source->facts();
-    auto front = front_end::make(facts, {&found.plan, 1});
+    auto front = front_end::make(facts, {&found.plan, 1}, found.mended);
     auto chain = std::make_unique<channel_chain>(*front, 0, found.plan, facts);
     return {std::move(source), std::move(found), std::move(front), std::move(chain),
             raw_watch{facts}};
@@ -60,8 +60,10 @@ measurement measurement_of(std::unique_ptr<block_source> source) {
 
 measurement open_measurement(const recording_options& recording, const signal_options& signal,
                              const program& program) {
-    const search_request request{
-        .carrier = signal.carrier_hz(), .tone_hz = signal.tone_hz(), .width_hz = signal.width_hz()};
+    const search_request request{.carrier = signal.carrier_hz(),
+                                 .tone_hz = signal.tone_hz(),
+                                 .width_hz = signal.width_hz(),
+                                 .mend_iq = signal.mend_iq};
     std::unique_ptr<block_source> source = open_recording(recording.request());
     found_signal found =
         unless_stopped(*source, program, [&] { return find_signal(*source, request); });
@@ -87,6 +89,14 @@ int status_of(const pass_report& pass, const program& program) {
         break;
     }
     return program.stopping.exit_status();
+}
+
+sheet describe_mending(const measurement& m) {
+    sheet s;
+    if (m.found.mended) {
+        s.add("mended", describe(*m.found.mended));
+    }
+    return s;
 }
 
 report_context context_of(const stream_facts& facts, const pass_report& pass,

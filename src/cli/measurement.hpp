@@ -66,6 +66,9 @@ template <class Find>
 /// How a pass ended, as an exit status: 0, 3 where input failed, 130 or 143 where it was stopped.
 [[nodiscard]] int status_of(const pass_report&, const program&);
 
+/// iq_gain_error_db and iq_phase_error_deg of what --mend-iq took out; empty where it did not.
+[[nodiscard]] sheet describe_mending(const measurement&);
+
 /// What every report says beside its result: the recording, and what it and the pass give reason to
 /// note.
 [[nodiscard]] report_context context_of(const stream_facts&, const pass_report&, const program&,

@@ -130,6 +130,9 @@ void signal_options::add_to(CLI::App& app) {
                    "flat width of the channel, both sides together; by default from the tone")
         ->type_name("HZ")
         ->group(group);
+    app.add_flag("--mend-iq", mend_iq,
+                 "take the receiver's image out first, fitted in the recording's opening")
+        ->group("Corrections");
 }
 
 std::optional<signed_hz> signal_options::carrier_hz() const {

@@ -30,6 +30,7 @@ struct recording_options {
 /// Which signal in it.
 struct signal_options {
     std::string carrier = "auto", tone = "auto", width;
+    bool mend_iq = false;
     void add_to(CLI::App&);
     [[nodiscard]] std::optional<signed_hz> carrier_hz() const; ///< nothing: auto
     [[nodiscard]] std::optional<double> tone_hz() const;       ///< nothing: auto

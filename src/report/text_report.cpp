@@ -85,8 +85,12 @@ private:
     [[nodiscard]] std::string print(const sheet_group& group, std::size_t indent) const {
         std::string text;
         for (std::size_t i = 0; i < group.parts.size(); ++i) {
-            const std::string label = label_of(group.key);
-            text += heading(group.list ? fmt::format("{} {}", label, i + 1) : label, indent);
+            std::string label = label_of(group.key);
+            if (group.list) { // "carriers": one of them is "carrier 2"
+                label.resize(label.size() - (label.ends_with('s') ? 1 : 0));
+                label += fmt::format(" {}", i + 1);
+            }
+            text += heading(label, indent);
             text += print(group.parts[i], indent + 2);
         }
         return text;

@@ -5,6 +5,7 @@
 
 #include "tonewalk/base/estimate.hpp"
 #include "tonewalk/base/sample.hpp"
+#include "tonewalk/base/sheet.hpp"
 
 namespace tonewalk {
 
@@ -26,5 +27,8 @@ struct iq_balance {
 
 /// Gain and phase from the image: e^(-j e) gQ/gI = (1 - k)/(1 + k). |k| below 1.
 [[nodiscard]] iq_balance balance_from_image(cf64 image_ratio, double image_ratio_u95) noexcept;
+
+/// iq_gain_error_db and iq_phase_error_deg, each with _u95.
+[[nodiscard]] sheet describe(const iq_balance&);
 
 } // namespace tonewalk
