@@ -18,9 +18,9 @@ constexpr double least_share = 0.5;   // of the mean depth: silence is steady to
 constexpr double most_unrest = 0.1;   // of the tone's power, in any part
 constexpr double noise_allowed = 6.0; // times the mean noise power: one part in 400 exceeds it
 constexpr double hann_noise_bins = 1.5;
-constexpr double least_depth = 0.005; // rms; below, it is nobody's speech
-constexpr double in_step_bins = 3.0;  // in-step power of depth 1 rms: twice 1.5 bins
-constexpr double in_step_ratio = 1.5; // noise alone: 1 within some hundredths
+constexpr double least_rms_depth = 0.005; // below, it is nobody's speech
+constexpr double in_step_bins = 3.0;      // in-step power of depth 1 rms: twice 1.5 bins
+constexpr double in_step_ratio = 1.5;     // noise alone: 1 within some hundredths
 
 /// e^(j 2 pi turns n), n from 0.
 class turning {
@@ -163,7 +163,7 @@ bool carrier_parts::in_step(double low_hz, double high_hz,
             }
         }
     }
-    const double least = in_step_bins * least_depth * least_depth * carrier_squares;
+    const double least = in_step_bins * least_rms_depth * least_rms_depth * carrier_squares;
     return in_step > std::max(least, in_step_ratio * quadrature);
 }
 

@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "decimator.hpp"
+#include "filter_shape.hpp"
 #include "tonewalk/maths/fir.hpp"
 
 namespace tonewalk {
@@ -12,7 +13,6 @@ namespace {
 
 constexpr double final_rate_in_widths = 4.0; // at least, where the input allows
 constexpr double middle_rate_in_widths = 8.0;
-constexpr double stop_in_widths = 0.75;
 constexpr std::size_t most_samples_a_call = 4096;
 
 std::size_t whole_steps(double rate_hz, double least_rate_hz) {

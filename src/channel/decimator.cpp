@@ -5,12 +5,11 @@
 #include <cassert>
 #include <utility>
 
+#include "filter_shape.hpp"
 #include "tonewalk/maths/fir.hpp"
 
 namespace tonewalk {
 namespace {
-
-constexpr std::size_t lanes = 8;
 
 sample_index ceiling_quotient(sample_index a, sample_index b) {
     return a >= 0 ? (a + b - 1) / b : -(-a / b);

@@ -7,6 +7,7 @@
 
 #include <fmt/core.h>
 
+#include "filter_shape.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/base/quantity.hpp"
 #include "tonewalk/base/random.hpp"
@@ -15,10 +16,8 @@
 namespace tonewalk {
 namespace {
 
-constexpr std::size_t lanes = 8; // partial sums an output, whatever the instruction set
 constexpr std::size_t least_cell_samples = 1024;
 constexpr double least_rate_in_widths = 8.0; // of the output
-constexpr double stop_in_widths = 0.75;      // off the carrier, where the channel filter stops
 constexpr std::size_t most_decimation = 64;  // later steps are the chain's
 
 std::size_t rounded_up(std::size_t n, std::size_t multiple) {

@@ -5,15 +5,15 @@
 #include <cassert>
 #include <cmath>
 #include <complex>
-#include <numbers>
 
 #define EIGEN_MPL2_ONLY
 #include <eigen3/Eigen/Dense>
 
+#include "two_pi.hpp"
+
 namespace tonewalk {
 namespace {
 
-constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr Eigen::Index run_rows = 256;
 
 /// Where a column stands. Cosine and sine count from the middle of the record, so that frequency

@@ -5,14 +5,12 @@
 #include <cassert>
 #include <cmath>
 #include <complex>
-#include <numbers>
 
 #include "tonewalk/base/decibel.hpp"
+#include "two_pi.hpp"
 
 namespace tonewalk {
 namespace {
-
-constexpr double two_pi = 2.0 * std::numbers::pi;
 
 /// |sum v[n] e^(-j 2 pi bins n/N)|.
 template <class Value>

@@ -9,7 +9,7 @@
 namespace tonewalk {
 namespace {
 
-constexpr double pi = std::numbers::pi;
+using std::numbers::pi;
 constexpr std::size_t most_order = 40;
 
 /// Sum in 8 fixed lanes, so that several are added at a time.

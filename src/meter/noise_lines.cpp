@@ -11,7 +11,7 @@
 namespace tonewalk {
 namespace {
 
-constexpr double pi = std::numbers::pi;
+using std::numbers::pi;
 constexpr double line_guard_bins = 4.0; // half the main lobe of the window
 constexpr double mains_guard_bins = 1.0;
 constexpr double mains_highest_hz = 1000.0;

@@ -11,17 +11,17 @@
 namespace tonewalk {
 namespace {
 
-using json = nlohmann::ordered_json;
+using nlohmann::ordered_json;
 
 // 2400000 rather than 2400000.0
-json number(double value) {
+ordered_json number(double value) {
     constexpr double whole_up_to = 9.007199254740992e15; // 2^53
     if (value == std::trunc(value) && std::abs(value) <= whole_up_to)
         return static_cast<std::int64_t>(value);
     return value;
 }
 
-void put_text(json& object, const char* key, const std::string& text) {
+void put_text(ordered_json& object, const char* key, const std::string& text) {
     if (!text.empty())
         object[key] = text;
 }
@@ -36,8 +36,8 @@ std::string shortest_utc(utc_time time) {
     return format_utc(time, 9);
 }
 
-json global_of(const sigmf_document& document) {
-    json global;
+ordered_json global_of(const sigmf_document& document) {
+    ordered_json global;
     global["core:datatype"] = document.format.name();
     global["core:version"] = "1.2.5";
     global["core:sample_rate"] = number(document.sample_rate_hz);
@@ -52,8 +52,8 @@ json global_of(const sigmf_document& document) {
     return global;
 }
 
-json capture_of(const sigmf_segment& segment) {
-    json capture;
+ordered_json capture_of(const sigmf_segment& segment) {
+    ordered_json capture;
     capture["core:sample_start"] = segment.sample_start;
     if (segment.global_index)
         capture["core:global_index"] = *segment.global_index;
@@ -64,8 +64,8 @@ json capture_of(const sigmf_segment& segment) {
     return capture;
 }
 
-json annotation_of(const sigmf_annotation& remark) {
-    json annotation;
+ordered_json annotation_of(const sigmf_annotation& remark) {
+    ordered_json annotation;
     annotation["core:sample_start"] = remark.sample_start;
     if (remark.sample_count)
         annotation["core:sample_count"] = *remark.sample_count;
@@ -92,15 +92,15 @@ std::string sigmf_text(const sigmf_document& document) {
     assert(document.sha512.empty() || document.sha512.size() == 128);
     assert(ascending(document.segments) && ascending(document.annotations));
 
-    json root;
+    ordered_json root;
     root["global"] = global_of(document);
-    root["captures"] = json::array();
+    root["captures"] = ordered_json::array();
     for (const auto& segment : document.segments)
         root["captures"].push_back(capture_of(segment));
-    root["annotations"] = json::array();
+    root["annotations"] = ordered_json::array();
     for (const auto& remark : document.annotations)
         root["annotations"].push_back(annotation_of(remark));
-    return root.dump(4, ' ', false, json::error_handler_t::replace) + "\n";
+    return root.dump(4, ' ', false, ordered_json::error_handler_t::replace) + "\n";
 }
 
 } // namespace tonewalk

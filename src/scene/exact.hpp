@@ -13,6 +13,7 @@ namespace tonewalk {
 /// Conversions that give the same bits on every machine: only + - x / and square root below them.
 
 inline constexpr double ln10_over_20 = 0.11512925464970228420089957273422;
+inline constexpr double turns_per_rad = 0.15915494309189533576888376337251;
 
 inline double amplitude_from_db(double db) noexcept {
     return std::isinf(db) && db < 0.0 ? 0.0 : exact_exp(db * ln10_over_20);

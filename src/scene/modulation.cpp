@@ -8,7 +8,6 @@
 namespace tonewalk {
 namespace {
 
-constexpr double turns_per_rad = 0.15915494309189533576888376337251;
 constexpr std::uint64_t speech_stream = 0x5350;
 
 modulation_line line_at(double frequency_hz, double phase_deg, double depth, double rate_hz,

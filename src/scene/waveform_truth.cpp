@@ -11,7 +11,6 @@ namespace tonewalk {
 namespace {
 
 constexpr unsigned cycle_points = 4096;
-constexpr double turns_per_rad = 0.15915494309189533576888376337251;
 
 bool sounds(const scene_tone& tone, double time_s) noexcept {
     return tone.start_s <= time_s && time_s < tone.stop_s;
