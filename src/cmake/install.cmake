@@ -35,3 +35,12 @@ file(RELATIVE_PATH pkg_config_to_prefix ${CMAKE_INSTALL_FULL_LIBDIR}/pkgconfig $
 configure_file(${CMAKE_CURRENT_LIST_DIR}/tonewalk.pc.in ${PROJECT_BINARY_DIR}/tonewalk.pc @ONLY)
 install(FILES ${PROJECT_BINARY_DIR}/tonewalk.pc DESTINATION ${pkg_config_folder})
 install(FILES LICENSE README.md TYPE DOC)
+install(DIRECTORY docs TYPE DOC)
+
+if(TARGET tonewalk_pages)
+  set(pages ${PROJECT_BINARY_DIR}/src/cli)
+  install(FILES ${pages}/tonewalk.1 DESTINATION ${CMAKE_INSTALL_MANDIR}/man1)
+  install(FILES ${pages}/tonewalk.bash DESTINATION ${CMAKE_INSTALL_DATADIR}/bash-completion/completions RENAME tonewalk)
+  install(FILES ${pages}/_tonewalk DESTINATION ${CMAKE_INSTALL_DATADIR}/zsh/site-functions)
+  install(FILES ${pages}/tonewalk.fish DESTINATION ${CMAKE_INSTALL_DATADIR}/fish/vendor_completions.d)
+endif()
