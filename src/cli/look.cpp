@@ -78,15 +78,13 @@ public:
             notes.merge(compression.doubts);
             s.add("compression", describe(compression));
         }
-        return s.join(curves_of(log));
+        if (meter_->has_records()) {
+            s.add(log.strip);
+        }
+        return s;
     }
 
 private:
-    static sheet curves_of(const level_log& log) {
-        sheet s;
-        s.add(log.strip);
-        return s;
-    }
     std::unique_ptr<line_meter> meter_;
     std::unique_ptr<compression_watch> compression_;
 };
@@ -113,6 +111,8 @@ whole_view watch_all(std::unique_ptr<block_source>& source, const recording_surv
     view.notes.merge(view.raw.doubts);
     if (witness) {
         view.gain = witness->result(view.notes);
+    } else {
+        view.gain.add("gain_control", describe(judge_gain_control({})));
     }
     source = std::move(m.source);
     return view;

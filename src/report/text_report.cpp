@@ -17,6 +17,9 @@ namespace {
 
 using strings = std::vector<std::string>;
 
+constexpr std::size_t most_parts = 5;       // of a list that are shown whole
+constexpr std::size_t most_nested_rows = 4; // of a table inside a part
+
 /// Puts a sheet and its nested parts below each other.
 class sheet_printer {
 public:
@@ -84,7 +87,8 @@ private:
 
     [[nodiscard]] std::string print(const sheet_group& group, std::size_t indent) const {
         std::string text;
-        for (std::size_t i = 0; i < group.parts.size(); ++i) {
+        const std::size_t shown = std::min(group.parts.size(), most_parts);
+        for (std::size_t i = 0; i < shown; ++i) {
             std::string label = label_of(group.key);
             if (group.list) { // "carriers": one of them is "carrier 2"
                 label.resize(label.size() - (label.ends_with('s') ? 1 : 0));
@@ -93,6 +97,9 @@ private:
             text += heading(label, indent);
             text += print(group.parts[i], indent + 2);
         }
+        if (shown < group.parts.size())
+            text += fmt::format("\n{}and {} more {}\n", std::string(indent, ' '),
+                                group.parts.size() - shown, label_of(group.key));
         return text;
     }
 
@@ -101,7 +108,9 @@ private:
             return fmt::format("\n{}{}: {}\n", std::string(indent, ' '), label_of(table.key),
                                table.rows == 0 ? "none" : fmt::format("{} records", table.rows));
         std::string text = heading(label_of(table.key), indent);
-        const std::size_t shown = std::min(table.rows, table_rows_);
+        const std::size_t most =
+            indent == 0 ? table_rows_ : std::min(table_rows_, most_nested_rows);
+        const std::size_t shown = std::min(table.rows, most);
         const std::string grid = layout_.grid(grid_of(table, shown), indent + 2);
         text += grid.empty() ? listed(table, shown, indent + 2) : grid;
         if (shown < table.rows)
