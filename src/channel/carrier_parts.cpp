@@ -99,8 +99,23 @@ std::vector<carrier_parts::sidebands> carrier_parts::sidebands_at(double tone_hz
     return found;
 }
 
-bool carrier_parts::steady(double tone_hz, double depth, double noise_density) const {
-    const std::vector<sidebands> tone = sidebands_at(tone_hz);
+/// Fades part a line into what came before and after, whose sum peaks beside the true frequency.
+double carrier_parts::straighten(std::span<sidebands> tone) const {
+    cf64 turn{};
+    for (std::size_t k = 1; k < count_; ++k) {
+        turn += tone[k].in_step * std::conj(tone[k - 1].in_step);
+    }
+    const double most_turns = 1.0 / static_cast<double>(count_);
+    const double turns = std::clamp(std::arg(turn) / two_pi, -most_turns, most_turns);
+    for (std::size_t k = 0; k < count_; ++k) {
+        tone[k].in_step *= std::polar(1.0, -two_pi * turns * static_cast<double>(k));
+    }
+    return turns;
+}
+
+std::optional<double> carrier_parts::steady_tone(double tone_hz, double depth,
+                                                 double noise_density) const {
+    std::vector<sidebands> tone = sidebands_at(tone_hz);
     double quadrature = 0.0, carrier_power = 0.0;
     for (std::size_t k = 0; k < count_; ++k) {
         quadrature += std::norm(tone[k].quadrature);
@@ -111,7 +126,16 @@ bool carrier_parts::steady(double tone_hz, double depth, double noise_density) c
     const double size = static_cast<double>(size_);
     const double noise = std::min(quadrature / carrier_power,
                                   2.0 * noise_density * hann_noise_bins * rate_hz_ * size);
-    const double part_s = size / rate_hz_;
+    if (agree(tone, depth, noise)) {
+        return tone_hz;
+    }
+    const double turns_a_part = straighten(tone);
+    return agree(tone, depth, noise) ? std::optional{tone_hz + turns_a_part * rate_hz_ / size}
+                                     : std::nullopt;
+}
+
+bool carrier_parts::agree(std::span<const sidebands> tone, double depth, double noise) const {
+    const double part_s = static_cast<double>(size_) / rate_hz_;
     const std::size_t run = std::clamp<std::size_t>(
         static_cast<std::size_t>(std::lround(steady_s / part_s)), 2, count_);
     for (std::size_t first = 0; first + run <= count_; ++first) {

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <cstddef>
+#include <optional>
 #include <span>
 #include <vector>
 
@@ -17,10 +18,12 @@ public:
     /// `part_s` long each, or half of what there is.
     carrier_parts(std::span<const cf32> samples, double rate_hz, double carrier_hz, double part_s);
 
-    /// Whether a tone's depth and phase stay put for some 1 s (a shorter opening: throughout), at
+    /// The tone's frequency, refined where its phase turns (at most one bin of all parts
+    /// together), if depth and phase then agree for some 1 s (a shorter opening: throughout) at
     /// half its mean `depth` (1: 100 %) or more. `noise_density`: full scale^2 per Hz. `tone_hz` at
     /// least 5 / part_s.
-    [[nodiscard]] bool steady(double tone_hz, double depth, double noise_density) const;
+    [[nodiscard]] std::optional<double> steady_tone(double tone_hz, double depth,
+                                                    double noise_density) const;
 
     /// Whether the lines between `low_hz` and `high_hz` are in step with the carrier, as amplitude
     /// modulation is and noise, phase noise or another carrier is not; `tones` left out.
@@ -33,6 +36,9 @@ private:
         cf64 in_step, quadrature;
     };
     [[nodiscard]] std::vector<sidebands> sidebands_at(double tone_hz) const;
+    /// Takes the turning of a tone that is slightly off out of its sidebands; turns a part.
+    [[nodiscard]] double straighten(std::span<sidebands> tone) const;
+    [[nodiscard]] bool agree(std::span<const sidebands> tone, double depth, double noise) const;
     [[nodiscard]] std::span<const cf32> part(std::size_t k) const noexcept;
 
     double rate_hz_;

@@ -185,12 +185,19 @@ void close_look::keep_steady(std::vector<pair>& found, double carrier_hz,
         }
         return *parts;
     };
-    const auto unsteady = [&](const pair& p) {
-        return p.depth(carrier_power) < least_depth ||
-               !parts_for(p.hz).steady(p.hz, p.depth(carrier_power),
-                                       spectrum_->noise_density(carrier_hz + p.hz));
-    };
-    found.erase(std::remove_if(found.begin(), found.end(), unsteady), found.end());
+    std::vector<pair> steady;
+    for (pair p : found) {
+        const double depth = p.depth(carrier_power);
+        const auto hz = depth < least_depth
+                            ? std::nullopt
+                            : parts_for(p.hz).steady_tone(
+                                  p.hz, depth, spectrum_->noise_density(carrier_hz + p.hz));
+        if (hz) {
+            p.hz = *hz;
+            steady.push_back(p);
+        }
+    }
+    found.swap(steady);
 }
 
 found_carrier close_look::describe(double hz, std::optional<double> wanted_tone_hz) const {

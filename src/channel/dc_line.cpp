@@ -4,6 +4,7 @@
 #include <cmath>
 
 #include "line_transform.hpp"
+#include "search_survey.hpp"
 #include "segments.hpp"
 
 namespace tonewalk {
@@ -22,9 +23,7 @@ bool is_sideband(const line_spectrum& survey, double power, double carrier_hz) {
            survey.power(*partner) < mirror_ratio * power;
 }
 
-} // namespace
-
-double dc_line(const looked_at& what, const line_spectrum& survey, double carrier_hz) {
+double still_line(const looked_at& what, const line_spectrum& survey, double carrier_hz) {
     const auto bin = survey.strongest(-survey.bin_hz(), survey.bin_hz());
     if (!bin || std::abs(survey.peak_at(*bin).hz) > 0.5 * survey.bin_hz() ||
         is_sideband(survey, survey.power(*bin), carrier_hz)) {
@@ -34,7 +33,7 @@ double dc_line(const looked_at& what, const line_spectrum& survey, double carrie
     const std::span<const float> weights = transform.weights();
     cf64 sum{};
     double power = 0.0, segments = 0.0;
-    for_each_segment(what, [&](std::span<const cf32> segment) {
+    for_each_segment(what, survey.size(), [&](std::span<const cf32> segment) {
         cf64 line{};
         for (std::size_t n = 0; n < segment.size(); ++n) {
             line += cf64{segment[n] * weights[n]};
@@ -45,6 +44,17 @@ double dc_line(const looked_at& what, const line_spectrum& survey, double carrie
     });
     const cf64 mean = sum / segments;
     return std::norm(mean) > least_still * power / segments ? std::abs(mean) : 0.0;
+}
+
+} // namespace
+
+double dc_line(const looked_at& what, const line_spectrum& survey, double carrier_hz) {
+    if (std::abs(carrier_hz) > 2.0 * centre_bins * survey.bin_hz()) {
+        return still_line(what, survey, carrier_hz);
+    }
+    const std::size_t finer = 2 * survey.size();
+    return finer <= finest_segment(what.frames) ? dc_line(what, survey_of(what, finer), carrier_hz)
+                                                : 0.0;
 }
 
 } // namespace tonewalk

@@ -2,9 +2,11 @@
 #pragma once
 
 #include <optional>
+#include <span>
 #include <vector>
 
 #include "line_spectrum.hpp"
+#include "reference_lines.hpp"
 #include "search_opening.hpp"
 #include "tonewalk/channel/iq_balance.hpp"
 
@@ -18,17 +20,25 @@ class image_fit {
 public:
     /// Adds one look with its survey; real samples add nothing.
     void add(const looked_at&, const line_spectrum& survey);
-    /// Nothing where no line suited: 8 bins of the survey or more from 0 Hz and the band's edges,
-    /// 20 dB over the noise at its mirror place, 10 dB over what stands there.
+    /// Nothing where no line suited (reference_lines).
     [[nodiscard]] std::optional<iq_balance> result() const;
+
+    /// An image ratio seen once, and how sure: 1 / variance of both components together.
+    struct observation {
+        cf64 ratio;
+        double weight = 0.0;
+    };
 
 private:
     /// One line over one look.
     struct group {
         cf64 ratio;
-        double variance = 0.0; ///< complex: of both components together
-        bool steady = false;   ///< its segments agree within the noise
+        double variance = 0.0;
+        bool steady = false; ///< its segments agree within the noise
     };
+    void add_lines(const looked_at&, const line_spectrum& survey, const reference_lines&);
+    void add_group(std::span<const observation> of_line);
+    [[nodiscard]] std::vector<observation> trusted() const;
     std::vector<group> groups_;
 };
 

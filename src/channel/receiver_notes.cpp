@@ -68,12 +68,10 @@ void note_receiver(found_signal& f, double offset_hz, const found_carrier& chose
         return;
     }
     const std::string advice = retuning_advice(f, facts);
-    if (from_centre_hz > 2.0 * centre_bins * s.spectrum.bin_hz()) {
-        const double carrier = decibel::from_db(chosen.level_dbfs).amplitude_ratio();
-        f.dc_amplitude = dc_line(s.look.what, s.spectrum, offset_hz);
-        note_line(f, note_code::dc_in_channel, "the receiver's DC line", f.dc_amplitude / carrier,
-                  advice);
-    }
+    const double carrier = decibel::from_db(chosen.level_dbfs).amplitude_ratio();
+    f.dc_amplitude = dc_line(s.look.what, s.spectrum, offset_hz);
+    note_line(f, note_code::dc_in_channel, "the receiver's DC line", f.dc_amplitude / carrier,
+              advice);
     image_fit images;
     images.add(s.look.what, s.spectrum);
     if (const auto balance = images.result()) {

@@ -83,8 +83,12 @@ private:
 } // namespace
 
 line_spectrum survey(const looked_at& what) {
-    line_spectrum spectrum{segment_size(what.frames), what.facts->sample_rate_hz};
-    for_each_segment(what, [&](std::span<const cf32> segment) { spectrum.add(segment); });
+    return survey_of(what, segment_size(what.frames));
+}
+
+line_spectrum survey_of(const looked_at& what, std::size_t size) {
+    line_spectrum spectrum{size, what.facts->sample_rate_hz};
+    for_each_segment(what, size, [&](std::span<const cf32> segment) { spectrum.add(segment); });
     spectrum.finish();
     return spectrum;
 }

@@ -15,6 +15,8 @@ inline constexpr double centre_bins = 3.0;
 
 /// The averaged spectrum of the whole band.
 [[nodiscard]] line_spectrum survey(const looked_at&);
+/// From segments of `size` samples.
+[[nodiscard]] line_spectrum survey_of(const looked_at&, std::size_t size);
 
 /// What was searched, and what its spectrum showed.
 struct searched {

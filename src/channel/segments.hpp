@@ -18,11 +18,15 @@ namespace tonewalk {
     return std::min(size, std::max<std::size_t>(frames, 1));
 }
 
-/// Hands each segment's samples to `use`, in order; fewer than 16 overlap by half.
+/// The longest segments worth taking where lines stand close: three at least, up to 2^20 samples.
+[[nodiscard]] inline std::size_t finest_segment(std::size_t frames) noexcept {
+    return std::min(frames / 2, std::size_t{1} << 20);
+}
+
+/// Hands each segment of `size` samples to `use`, in order; fewer than 16 overlap by half.
 template <class Use>
-void for_each_segment(const looked_at& what, Use use) {
+void for_each_segment(const looked_at& what, std::size_t size, Use use) {
     constexpr std::size_t enough = 16;
-    const std::size_t size = segment_size(what.frames);
     const std::size_t advance =
         what.frames / size >= enough ? size : std::max<std::size_t>(1, size / 2);
     std::vector<cf32> segment(size);
