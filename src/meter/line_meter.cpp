@@ -13,7 +13,9 @@
 #include "level_intervals.hpp"
 #include "noise_history.hpp"
 #include "noise_lines.hpp"
+#include "stretch_samples.hpp"
 #include "strip_picture.hpp"
+#include "tone_place.hpp"
 #include "tonewalk/base/error.hpp"
 #include "tonewalk/base/quantity.hpp"
 
@@ -57,8 +59,8 @@ struct line_meter::state {
           search_hz{std::min(most_search_hz, c.tone_hz.value_or(c.width_hz) / 3.0)},
           orders{orders_reaching(reach_hz, window_s, c.grid.rate_hz)}, plain{samples},
           weighted{samples}, noise{{c.grid.rate_hz, samples, c.width_hz, c.response}},
-          noise_about{window_s}, curve{0.0, c.hold_frequency ? 0.0 : opening_unknown_hz}, picture{c.width_hz,
-                                                                         c.carrier_offset_hz} {
+          noise_about{window_s}, curve{0.0, c.hold_frequency ? 0.0 : opening_unknown_hz},
+          picture{c.width_hz, c.carrier_offset_hz}, place{window_s} {
         log.every_s = c.grid.every_s;
         log.window_s = window_s;
         log.width_hz = c.width_hz;
@@ -68,7 +70,6 @@ struct line_meter::state {
     }
     void check_window() const;
     void measure_complete();
-    void forget_before(sample_index first);
     void measure(sample_index first);
     void null_record(double time_s, std::uint32_t flags);
     [[nodiscard]] pending_record read(double time_s, double carrier_hz);
@@ -77,9 +78,7 @@ struct line_meter::state {
     void settle(bool stretch_over);
     void settle(const pending_record&);
     static void measure_tone(const three_lines&, double independent, level_record&, record_basis&);
-    [[nodiscard]] double tone_shift_hz() const;
     void complete();
-    [[nodiscard]] bool touched(sample_index first) const noexcept;
     [[nodiscard]] double tone() const noexcept { return set.tone_hz.value_or(0.0); }
 
     config set;
@@ -99,16 +98,11 @@ struct line_meter::state {
     level_log log;
 
     baseband_stretch stretch;
-    std::vector<cf32> history; // of the stretch, from history_first on
-    sample_index history_first = 0;
-    sample_index received = 0; // samples of the stretch so far
-    sample_index next = 0;     // record of the stretch
-    std::vector<sample_range> non_finite;
+    stretch_samples history;
+    sample_index next = 0; // record of the stretch
 
     std::deque<pending_record> pending;
-    std::size_t tone_records = 0;
-    double tone_evidence = 0.0;               // line powers over noise
-    double tone_slope = 0.0, tone_bend = 0.0; // of the tone lines' power over all records
+    tone_place place;
     double offset_weight = 0.0, offset_sum = 0.0;
 };
 
@@ -138,57 +132,30 @@ void line_meter::state::check_window() const {
 void line_meter::begin_stretch(const baseband_stretch& stretch) {
     state& s = *state_;
     s.stretch = stretch;
-    s.history.clear();
-    s.history_first = s.received = s.next = 0;
-    s.non_finite.clear();
+    s.history.begin();
+    s.next = 0;
 }
 
 void line_meter::add(const baseband_block& block) {
-    state& s = *state_;
-    s.history.insert(s.history.end(), block.iq.begin(), block.iq.end());
-    s.received += static_cast<sample_index>(block.iq.size());
-    for (const sample_range& range : block.non_finite) {
-        if (s.non_finite.empty() || range.first > s.non_finite.back().first) {
-            s.non_finite.push_back(range);
-        } else if (range.first == s.non_finite.back().first) {
-            s.non_finite.back() = range; // it has grown
-        }
-    }
-    s.measure_complete();
+    state_->history.add(block);
+    state_->measure_complete();
 }
 
 /// Records whose samples, and the settling samples behind them, have all arrived.
 void line_meter::state::measure_complete() {
-    while (set.grid.holds(next, received)) {
+    while (set.grid.holds(next, history.received())) {
         const sample_index first = set.grid.first(next);
         const double time_s = stretch.start_s + set.grid.centre_s(next);
         if (!stretch.held) {
             null_record(time_s, flag_not_held);
-        } else if (touched(first)) {
+        } else if (history.touched(first, samples)) {
             null_record(time_s, flag_non_finite);
         } else {
             measure(first);
         }
         ++next;
-        forget_before(set.grid.first(next));
+        history.forget_before(set.grid.first(next));
     }
-}
-
-/// Drops samples that no record needs any more, seldom, so that few are moved.
-void line_meter::state::forget_before(sample_index first) {
-    const auto held = static_cast<sample_index>(history.size());
-    const sample_index needless = std::min(first - history_first, held);
-    if (needless > static_cast<sample_index>(4 * samples) || needless == held) {
-        history.erase(history.begin(), history.begin() + needless);
-        history_first += needless;
-    }
-}
-
-bool line_meter::state::touched(sample_index first) const noexcept {
-    const sample_index past = first + static_cast<sample_index>(samples);
-    return std::any_of(non_finite.begin(), non_finite.end(), [first, past](const sample_range& r) {
-        return r.first < past && r.first + r.count > first;
-    });
 }
 
 void line_meter::state::null_record(double time_s, std::uint32_t flags) {
@@ -241,8 +208,7 @@ void line_meter::state::search(pending_record& p) {
 }
 
 void line_meter::state::measure(sample_index first) {
-    const std::span<const cf32> record = std::span<const cf32>{history}.subspan(
-        static_cast<std::size_t>(first - history_first), samples);
+    const std::span<const cf32> record = history.record(first, samples);
     plain.set(record);
     weighted.set(record, weights);
     const double time_s = stretch.start_s + set.grid.centre_s(next);
@@ -307,11 +273,7 @@ void line_meter::state::settle(const pending_record& p) {
     if (set.tone_hz) {
         basis.split = r.carrier.power > strong_ratio * n;
         measure_tone(lines, floor.independent, r, basis);
-        const power_bend b = p.lines.tone_bend(at.hz);
-        tone_slope += b.slope / n;
-        tone_bend += b.bend / n;
-        tone_evidence += (std::norm(lines.upper) + std::norm(lines.lower)) / n - 2.0;
-        ++tone_records;
+        place.add(lines, p.lines.tone_bend(at.hz), n);
     }
     intervals.set(p.index, basis);
 }
@@ -331,21 +293,7 @@ void line_meter::state::measure_tone(const three_lines& lines, double independen
     }
 }
 
-/// How far the tone is off the opening's: where both its lines together, over all records and
-/// each against its noise, are highest; nothing where they hardly stand out of it.
-double line_meter::state::tone_shift_hz() const {
-    constexpr double least_evidence = 20.0, sigmas = 5.0;
-    const double scatter = std::sqrt(2.0 * static_cast<double>(tone_records));
-    if (set.hold_frequency || tone_evidence < least_evidence + sigmas * scatter || tone_bend >= 0.0) {
-        return 0.0;
-    }
-    return hann_offset_bins(-tone_slope / tone_bend * window_s) / window_s;
-}
-
-void line_meter::end_stretch() {
-    // A stretch's last records may wait for the curve; their neighbours' noise is all here.
-    state_->non_finite.clear();
-}
+void line_meter::end_stretch() {} // its last records may wait for the curve
 
 void line_meter::finish() {
     state_->complete();
@@ -358,7 +306,7 @@ void line_meter::state::complete() {
     }
     log.carrier_offset_hz =
         set.carrier_offset_hz + (offset_weight > 0.0 ? offset_sum / offset_weight : 0.0);
-    const double shift_hz = tone_shift_hz();
+    const double shift_hz = set.hold_frequency ? 0.0 : place.shift_hz();
     if (set.tone_hz) {
         log.tone_hz = *set.tone_hz + shift_hz;
     }
