@@ -157,20 +157,6 @@ void wait_until_writable(int descriptor) noexcept {
     ::poll(&waiting, 1, -1);
 }
 
-/// Writes everything: 0 or the reason.
-int write_all(int descriptor, std::string_view bytes) noexcept {
-    while (!bytes.empty()) {
-        const ssize_t written = ::write(descriptor, bytes.data(), bytes.size());
-        if (written >= 0)
-            bytes.remove_prefix(static_cast<std::size_t>(written));
-        else if (errno == EAGAIN)
-            wait_until_writable(descriptor);
-        else if (errno != EINTR)
-            return errno;
-    }
-    return 0;
-}
-
 /// What an output names on disk, for comparing; nothing for what does not exist and for devices.
 std::optional<std::pair<dev_t, ino_t>> identity(const fs::path& target) {
     struct stat facts {};
@@ -214,14 +200,14 @@ output_file::output_file(std::filesystem::path target, bool force)
         refuse_what_stands_there(target_, force_);
         target_ = behind_links(target_);
         temporary_ = name_beside(target_);
+        if (!temporaries.enter(temporary_))
+            refuse(target_, "has too long a path, or too many outputs are open", 0);
         descriptor_ = ::open(temporary_.c_str(), O_RDWR | O_CREAT | O_EXCL | O_CLOEXEC, 0666);
     }
-    if (descriptor_ < 0)
-        fail(target_, errno);
-    if (!in_place_ && !temporaries.enter(temporary_)) {
-        ::close(std::exchange(descriptor_, -1));
-        ::unlink(temporary_.c_str());
-        refuse(target_, "has too long a path, or too many outputs are open", 0);
+    if (descriptor_ < 0) {
+        const int failed = errno;
+        temporaries.leave(temporary_);
+        fail(target_, failed);
     }
 }
 
@@ -263,7 +249,7 @@ void output_file::write(std::span<const std::byte> bytes) {
 }
 
 void output_file::flush() {
-    const int failure = reader_gone_ ? 0 : write_all(descriptor_, buffer_);
+    const int failure = reader_gone_ ? 0 : write_fully(descriptor_, buffer_);
     buffer_.clear();
     if (failure == EPIPE)
         reader_gone_ = true;
@@ -291,6 +277,21 @@ void output_file::commit() {
     committed_ = true;
     temporaries.leave(temporary_);
     sync_folder(target_);
+}
+
+int write_fully(int descriptor, std::string_view bytes) noexcept {
+    while (!bytes.empty()) {
+        const ssize_t written = ::write(descriptor, bytes.data(), bytes.size());
+        if (written > 0)
+            bytes.remove_prefix(static_cast<std::size_t>(written));
+        else if (written == 0)
+            return EIO; // nothing of something: it would go on like that
+        else if (errno == EAGAIN)
+            wait_until_writable(descriptor);
+        else if (errno != EINTR)
+            return errno;
+    }
+    return 0;
 }
 
 void check_distinct_outputs(std::span<const std::filesystem::path> outputs) {

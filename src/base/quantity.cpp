@@ -235,4 +235,9 @@ std::string format_option_hz(double hz, bool as_offset) {
     return as_offset && !std::signbit(hz) ? '+' + shortest : shortest;
 }
 
+std::string format_option_seconds(double seconds) {
+    return std::abs(seconds) < 1.0 ? fmt::format("{:.12g}ms", seconds * 1e3)
+                                   : fmt::format("{}s", seconds);
+}
+
 } // namespace tonewalk

@@ -4,9 +4,12 @@
 #include <algorithm>
 #include <cmath>
 
+#include <fmt/core.h>
+
 #include "carrier_parts.hpp"
 #include "channel_width.hpp"
 #include "decimator.hpp"
+#include "tonewalk/base/error.hpp"
 #include "tonewalk/base/random.hpp"
 #include "tonewalk/maths/fir.hpp"
 
@@ -109,6 +112,13 @@ close_look::close_look(const looked_at& what, double offset_hz)
             run.swap(next);
         }
         samples_.insert(samples_.end(), run.begin(), run.end());
+    }
+    constexpr std::size_t least_samples = 16;
+    if (samples_.size() < least_samples) {
+        throw error{fault::malformed,
+                    fmt::format("lasts {:g} s, too short to find a signal in",
+                                static_cast<double>(what.frames) / what.facts->sample_rate_hz),
+                    what.facts->name, "give a longer recording, or correct --rate"};
     }
     spectrum_.emplace(transform_size(samples_.size()), rate_hz_);
     spectrum_->add(std::span<const cf32>{samples_}.first(spectrum_->size()));

@@ -34,7 +34,7 @@ void read_band(const std::string& text, audio_band_request& request) {
         return;
     }
     const std::size_t colon = text.find(':');
-    if (colon == std::string::npos) {
+    if (colon == std::string::npos || text.size() == 1) {
         throw error{fault::bad_request, "needs a low and a high end", "--band " + text,
                     "write it like 300:3k"};
     }
@@ -44,6 +44,7 @@ void read_band(const std::string& text, audio_band_request& request) {
     if (colon + 1 < text.size()) {
         request.high_hz = parse_hz(text.substr(colon + 1), "--band");
     }
+    check_audio_band(request);
 }
 
 double read_audio_rate(const std::string& text) {
@@ -84,8 +85,8 @@ audio_choice read_choice(const hear_options& o) {
               .force = o.running.force};
     c.options.clamp = c.file.sample != audio_sample::float32;
     static_cast<void>(audio_container_of(o.output));
-    read_band(o.band, c.band);
     c.band.audio_rate_hz = c.options.audio_rate_hz;
+    read_band(o.band, c.band);
     return c;
 }
 
@@ -157,6 +158,7 @@ int run_hear(const hear_options& o, const program& program) {
     m.chain->listen(meter);
     m.chain->listen(path);
     const pass_report pass = run(m, o.running, program);
+    need_record(pass, meter);
     spool.close();
 
     level_log log = log_or_nothing(meter, m);

@@ -171,6 +171,7 @@ int run_levels(const levels_options& o, const program& program) {
         m.chain->listen(*reading);
     }
     const pass_report pass = run(m, o.running, program);
+    need_record(pass, meter);
 
     level_log log = meter.take_result();
     if (reading) {

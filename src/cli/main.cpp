@@ -101,6 +101,7 @@ void print_help(const CLI::App& app) {
 }
 
 int run(int argc, char** argv) {
+    keep_standard_descriptors();
     const stop_watch stopping;
     CLI::App app{"Measurements on recordings of amplitude-modulated transmitters.", "tonewalk"};
     app.footer(program_examples);

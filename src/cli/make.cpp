@@ -21,6 +21,7 @@ int run_make(const make_options& o, const program& program) {
     const scene what = read_scene(o.scene);
     progress_line progress{o.quiet ? progress_choice::never : progress_choice::automatic,
                            what.rate_hz};
+    program.stopping.hold_results();
     const made_recording made =
         make_recording(what, o.base, o.force,
                        {.stop = program.stopping.token(), .progress = &progress, .threads = 1});

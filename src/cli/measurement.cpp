@@ -22,6 +22,10 @@ void print_error(const std::string& text) {
     std::fflush(stderr);
 }
 
+bool names_standard_output(const std::string& path) {
+    return path == "-" || path == "/dev/stdout" || path == "/dev/fd/1" || path == "/proc/self/fd/1";
+}
+
 } // namespace
 
 record_grid measurement::grid(double every_s, double window_s) const noexcept {
@@ -73,10 +77,27 @@ measurement open_measurement(const recording_options& recording, const signal_op
 pass_report run(measurement& m, const running_options& options, const program& program) {
     progress_line progress{options.progress_shown(), m.facts().sample_rate_hz};
     chain* const one = m.chain.get();
-    return run_pass(*m.source, *m.front, {&one, m.chain ? 1U : 0U}, m.watch,
-                    {.stop = program.stopping.token(),
-                     .progress = &progress,
-                     .threads = options.thread_count()});
+    run_control control{
+        .stop = program.stopping.token(), .progress = &progress, .threads = options.thread_count()};
+    const bool cut_opening = control.stop.stop_requested() && !m.facts().seekable;
+    if (cut_opening) { // what came of it is measured to its end
+        m.source->wake();
+        control.stop = {};
+    }
+    pass_report report = run_pass(*m.source, *m.front, {&one, m.chain ? 1U : 0U}, m.watch, control);
+    if (cut_opening && report.end == pass_end::complete) {
+        report.end = pass_end::stopped;
+    }
+    if (report.end == pass_end::stopped && report.samples == 0) {
+        throw stopped_early{};
+    }
+    return report;
+}
+
+void need_record(const pass_report& pass, const line_meter& meter) {
+    if (pass.end == pass_end::stopped && !meter.has_records()) {
+        throw stopped_early{};
+    }
 }
 
 int status_of(const pass_report& pass, const program& program) {
@@ -145,10 +166,11 @@ std::optional<output_file> output_set::open(const std::string& path) {
     if (path.empty()) {
         return std::nullopt;
     }
-    also(path);
+    const std::string target = names_standard_output(path) ? "-" : path;
+    also(target);
     check();
-    standard_output_ = standard_output_ || path == "-";
-    return output_file{path, force_};
+    standard_output_ = standard_output_ || target == "-";
+    return output_file{target, force_};
 }
 
 void output_set::spare(const std::string& recording) const {

@@ -38,16 +38,15 @@ struct measurement {
 /// For raw samples alone: no channel.
 [[nodiscard]] measurement measurement_of(std::unique_ptr<block_source>);
 
-/// What `find` gives; a stop ends its wait for a pipe's opening: throws stopped_early.
+/// What `find` gives. A stop ends its wait for a pipe's opening; then it is given what came of it,
+/// and where that is too little throws stopped_early.
 template <class Find>
 [[nodiscard]] auto unless_stopped(block_source& source, const program& program, Find find) {
     const std::stop_token stop = program.stopping.token();
     const std::stop_callback wake{stop, [&source] { source.wake(); }};
+    program.stopping.hold_results();
     try {
-        auto found = find();
-        if (!stop.stop_requested()) {
-            return found;
-        }
+        return find();
     } catch (const error&) { // a cut opening holds too little, or nothing
         if (!stop.stop_requested()) {
             throw;
@@ -56,12 +55,16 @@ template <class Find>
     throw stopped_early{};
 }
 
-/// Throws stopped_early when a signal comes before the opening is complete.
+/// Throws stopped_early when a signal comes before there is anything to measure.
 [[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&,
                                            const program&);
 
-/// Runs the pass; complains of input that failed halfway, whose result is then partial.
+/// Runs the pass; input that failed halfway gives a partial result. Throws stopped_early where a
+/// stop left nothing measured.
 [[nodiscard]] pass_report run(measurement&, const running_options&, const program&);
+
+/// Throws stopped_early where a stop came before the first record.
+void need_record(const pass_report&, const line_meter&);
 
 /// How a pass ended, as an exit status: 0, 3 where input failed, 130 or 143 where it was stopped.
 [[nodiscard]] int status_of(const pass_report&, const program&);

@@ -5,11 +5,21 @@
 #include <cstdio>
 #include <system_error>
 
+#include <fcntl.h>
 #include <fmt/core.h>
+#include <unistd.h>
 
 #include "tonewalk/base/error.hpp"
 
 namespace tonewalk::cli {
+
+void keep_standard_descriptors() {
+    for (const int descriptor : {STDIN_FILENO, STDOUT_FILENO, STDERR_FILENO}) {
+        if (::fcntl(descriptor, F_GETFD) < 0 && errno == EBADF) {
+            static_cast<void>(::open("/dev/null", O_RDWR)); // takes the lowest number: this one
+        }
+    }
+}
 
 void print_out(std::string_view text) {
     errno = 0;

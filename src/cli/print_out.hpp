@@ -9,4 +9,8 @@ namespace tonewalk::cli {
 /// full disk) throws error{unwritable}.
 void print_out(std::string_view text);
 
+/// Opens nothing behind standard descriptors that were handed over closed, so that no file of ours
+/// takes their numbers and gets what was meant for people.
+void keep_standard_descriptors();
+
 } // namespace tonewalk::cli

@@ -40,7 +40,7 @@ void stop_watch::watch(const std::stop_token& ending) {
         if (signal < 0) {
             continue;
         }
-        if (status_.load() != 0) {
+        if (status_.load() != 0 || !holding_.load()) {
             remove_temporaries();
             _exit(128 + signal);
         }

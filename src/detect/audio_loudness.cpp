@@ -25,8 +25,8 @@ void check(const audio_options& o, const carrier_curve& carrier) {
                     "leave it out or take --loudness field"};
     }
     if (carrier.empty()) {
-        throw error{fault::bad_request, "no record shows a carrier to divide by",
-                    "--loudness steady", "take --loudness field"};
+        throw error{fault::malformed, "no record shows a carrier to divide by", "--loudness steady",
+                    "take --loudness field"};
     }
 }
 

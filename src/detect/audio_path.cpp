@@ -7,6 +7,7 @@
 #include <fmt/format.h>
 
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/base/quantity.hpp"
 
 namespace tonewalk {
 namespace {
@@ -14,35 +15,48 @@ namespace {
 constexpr double default_low_hz = 50.0, least_low_hz = 5.0;
 constexpr double widest_band_over_rate = 0.45; // leaves a tenth of the lesser rate to fall off
 
-[[noreturn]] void refuse_band(const audio_band& band, std::string_view what,
+[[noreturn]] void refuse_band(const audio_band& band, fault kind, std::string_view what,
                               std::string_view mend) {
-    throw error{fault::bad_request, what, fmt::format("--band {}:{}", band.low_hz, band.high_hz),
+    throw error{kind, what,
+                fmt::format("--band {}:{}", format_option_hz(band.low_hz, false),
+                            format_option_hz(band.high_hz, false)),
                 mend};
+}
+
+double highest_audio_hz(double rate_hz) {
+    return widest_band_over_rate * rate_hz;
 }
 
 } // namespace
 
-audio_band choose_audio_band(const audio_band_request& r) {
+void check_audio_band(const audio_band_request& r) {
     if (!(r.audio_rate_hz >= 8000.0 && r.audio_rate_hz <= 192000.0)) {
         throw error{fault::bad_request, "no such audio rate",
                     fmt::format("--audio-rate {}", r.audio_rate_hz), "give 8000 to 192000"};
     }
+    const double highest_hz = highest_audio_hz(r.audio_rate_hz);
+    const audio_band band{r.low_hz.value_or(default_low_hz), r.high_hz.value_or(highest_hz), 0.0};
+    if (!(band.low_hz >= least_low_hz && band.low_hz < band.high_hz &&
+          band.high_hz <= highest_hz)) {
+        refuse_band(
+            band, fault::bad_request, "no such audio band at this audio rate",
+            fmt::format("give LOW:HIGH in Hz, LOW {} or more, HIGH above it and {:.0f} or less",
+                        least_low_hz, highest_hz));
+    }
+}
+
+audio_band choose_audio_band(const audio_band_request& r) {
+    check_audio_band(r);
     const double lesser_rate_hz = std::min(r.rate_hz, r.audio_rate_hz);
-    const double highest_hz = widest_band_over_rate * lesser_rate_hz;
+    const double highest_hz = highest_audio_hz(lesser_rate_hz);
     audio_band band;
     band.low_hz = r.low_hz.value_or(default_low_hz);
     band.high_hz = r.high_hz.value_or(std::min(0.5 * r.width_hz, highest_hz));
     band.stop_hz = std::min(1.25 * band.high_hz, 0.5 * lesser_rate_hz);
-    if (!(band.low_hz >= least_low_hz && band.low_hz < band.high_hz)) {
-        refuse_band(band, "no such audio band",
-                    fmt::format("give LOW:HIGH in Hz with {} <= LOW < HIGH", least_low_hz));
-    }
-    if (band.high_hz > highest_hz) {
-        refuse_band(
-            band, "the band does not fit the sample rates",
-            fmt::format(
-                "give at most {:.0f} Hz as HIGH, a greater --width or a greater --audio-rate",
-                highest_hz));
+    if (band.low_hz >= band.high_hz || band.high_hz > highest_hz) {
+        refuse_band(band, fault::malformed, "the band does not fit the channel",
+                    fmt::format("give HIGH above LOW and at most {:.0f}, or a greater --width",
+                                highest_hz));
     }
     return band;
 }

@@ -14,6 +14,8 @@
 #include <fmt/format.h>
 
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/base/output_file.hpp"
+#include "tonewalk/base/text.hpp"
 
 namespace tonewalk {
 namespace {
@@ -21,9 +23,9 @@ namespace {
 constexpr std::size_t buffer_samples = 16384;
 
 [[noreturn]] void fail(const std::filesystem::path& folder, std::string_view what, int cause) {
-    throw error{fault::unwritable,
-                fmt::format("{} ({})", what, std::generic_category().message(cause)),
-                folder.string(), "free space there or write the audio into another folder"};
+    throw error{
+        fault::unwritable, fmt::format("{} ({})", what, std::generic_category().message(cause)),
+        valid_utf8(folder.string()), "free space there or write the audio into another folder"};
 }
 
 /// A file without a name; where the file system knows none, one whose name goes at once.
@@ -71,14 +73,10 @@ void audio_spool::add(std::span<const float> audio) {
 }
 
 void audio_spool::flush() noexcept {
-    auto rest = std::as_bytes(std::span{buffer_});
-    while (!rest.empty() && failure_ == 0) {
-        const ssize_t written = ::write(descriptor_, rest.data(), rest.size());
-        if (written >= 0) {
-            rest = rest.subspan(static_cast<std::size_t>(written));
-        } else if (errno != EINTR) {
-            failure_ = errno;
-        }
+    const auto bytes = std::as_bytes(std::span{buffer_});
+    if (failure_ == 0) {
+        failure_ =
+            write_fully(descriptor_, {reinterpret_cast<const char*>(bytes.data()), bytes.size()});
     }
     buffer_.clear();
 }

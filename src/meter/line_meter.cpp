@@ -49,6 +49,11 @@ std::vector<double> hann_weights(std::size_t size) {
     return w;
 }
 
+/// A time to type that is no shorter than this one, in whole milliseconds.
+std::string at_least(double seconds) {
+    return format_option_seconds(std::ceil(seconds * 1e3) / 1e3);
+}
+
 } // namespace
 
 struct line_meter::state {
@@ -110,12 +115,12 @@ line_meter::line_meter(const config& c) : state_{std::make_unique<state>(c)} {}
 line_meter::~line_meter() = default;
 
 void line_meter::state::check_window() const {
-    const std::string where = fmt::format("--window {:g}s", set.grid.window_s);
+    const std::string where = "--window " + format_option_seconds(set.grid.window_s);
     if (set.tone_hz && *set.tone_hz * window_s < least_tone_bins) {
         throw error{fault::malformed,
                     fmt::format("is too short to part the tone of {} from the carrier",
                                 format_hz(*set.tone_hz, 5)),
-                    where, fmt::format("give --window {:.3g}s or longer", 4.0 / *set.tone_hz)};
+                    where, fmt::format("give --window {} or longer", at_least(4.0 / *set.tone_hz))};
     }
     std::vector<fitted_line> lines{{0.0, {}}};
     if (set.tone_hz) {
@@ -124,8 +129,8 @@ void line_meter::state::check_window() const {
     }
     if (noise.usable(lines) == 0) {
         throw error{fault::malformed, "leaves no lines from which the noise could be told", where,
-                    fmt::format("give --window {:.3g}s or longer, or a larger --width",
-                                40.0 / set.width_hz)};
+                    fmt::format("give --window {} or longer, or a larger --width",
+                                at_least(40.0 / set.width_hz))};
     }
 }
 
@@ -328,7 +333,8 @@ level_log line_meter::take_result() {
     state& s = *state_;
     if (s.log.records.empty()) {
         throw error{fault::malformed, "is longer than every gapless stretch of the recording",
-                    fmt::format("--window {:g}s", s.set.grid.window_s), "give a shorter --window"};
+                    "--window " + format_option_seconds(s.set.grid.window_s),
+                    "give a shorter --window"};
     }
     return std::move(s.log);
 }

@@ -122,8 +122,9 @@ public:
         raw_block block;
         block.lead = history_.give(slot, lead, frame);
         const std::size_t room = (slot.size() / frame - lead) * frame;
+        const bool opening_only = reader_.woken();
         const std::size_t size = replay_or_read(slot.subspan(block.lead * frame, room));
-        if (reader_.woken())
+        if (opening_only ? size == 0 : reader_.woken())
             return std::nullopt;
         block.first = facts_.stretches.front().first + handed_out_;
         block.count = size / frame;

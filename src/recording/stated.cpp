@@ -21,7 +21,9 @@ void apply_lane(const recording_request& request, stream_facts& facts) {
         throw error{fault::malformed,
                     fmt::format("has {} lane{}, there is no lane {}", facts.lanes,
                                 facts.lanes == 1 ? "" : "s", facts.lane),
-                    shown(facts.name), fmt::format("give --lane 0 to {}", facts.lanes - 1)};
+                    shown(facts.name),
+                    facts.lanes == 1 ? std::string{"leave --lane out"}
+                                     : fmt::format("give --lane 0 to {}", facts.lanes - 1)};
 }
 
 void apply_start(const recording_request& request, stated_facts& stated, stream_facts& facts) {

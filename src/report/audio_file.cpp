@@ -103,19 +103,10 @@ struct descriptor_io {
         return ::read(of(self).descriptor, into, static_cast<std::size_t>(bytes));
     }
     static sf_count_t write(const void* from, sf_count_t bytes, void* self) {
-        const char* const start = static_cast<const char*>(from);
-        sf_count_t done = 0;
-        while (done < bytes) {
-            const ssize_t written =
-                ::write(of(self).descriptor, start + done, static_cast<std::size_t>(bytes - done));
-            if (written > 0) {
-                done += written;
-            } else if (errno != EINTR) {
-                of(self).failure = errno;
-                break;
-            }
-        }
-        return done;
+        const std::string_view all{static_cast<const char*>(from), static_cast<std::size_t>(bytes)};
+        if (of(self).failure == 0)
+            of(self).failure = write_fully(of(self).descriptor, all);
+        return of(self).failure == 0 ? bytes : 0;
     }
     /// Libsndfile 1.2 keeps RF64's peak chunk, with its time stamp, although told not to: made
     /// into padding.

@@ -131,7 +131,8 @@ void commit_all(std::span<output_file* const> files, std::span<const fs::path> t
 made_recording make_recording(const scene& whole, const fs::path& base, bool force,
                               const run_control& control) {
     check_scene(whole, "scene");
-    if (base.empty() || base == "-")
+    const fs::path name = base.filename();
+    if (name.empty() || name == "-" || name == "." || name == "..")
         throw error{fault::bad_request, "is no base name", base.string(),
                     "give one such as walk, which makes walk.sigmf-data and its companions"};
     const std::array<fs::path, 3> targets{with_ending(base, ".sigmf-data"),

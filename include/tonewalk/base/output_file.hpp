@@ -44,6 +44,9 @@ private:
     bool force_ = false, in_place_ = false, committed_ = false, reader_gone_ = false;
 };
 
+/// Writes all of it into a descriptor: 0, or the reason (errno).
+[[nodiscard]] int write_fully(int descriptor, std::string_view bytes) noexcept;
+
 /// Refuses two outputs that name one file (error{bad_request}); "-" at most once.
 void check_distinct_outputs(std::span<const std::filesystem::path>);
 

@@ -43,4 +43,7 @@ using moment = std::variant<double, utc_time>;
 /// What to type again: "+3.2M", "-12500", "145.2M".
 [[nodiscard]] std::string format_option_hz(double hz, bool as_offset);
 
+/// As people type a time: "200ms", "1.5s".
+[[nodiscard]] std::string format_option_seconds(double seconds);
+
 } // namespace tonewalk

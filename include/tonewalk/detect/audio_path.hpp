@@ -27,7 +27,9 @@ struct audio_band_request {
     std::optional<double> low_hz = {};  ///< --band; empty: 50 Hz
     std::optional<double> high_hz = {}; ///< --band; empty: half the width, or what the rates hold
 };
-/// Throws error{bad_request} naming --band or --audio-rate when they cannot be had.
+/// What can be told without the recording: throws error{bad_request} naming --band or --audio-rate.
+void check_audio_band(const audio_band_request&);
+/// Checks that first; throws error{malformed} where the recording does not hold the band.
 [[nodiscard]] audio_band choose_audio_band(const audio_band_request&);
 
 /// From baseband samples to audio: detect, take the carrier off, limit the band, change the rate,

@@ -83,7 +83,9 @@ public:
     /// Throws error{unreadable} when the file shrank or the device failed.
     virtual void fill(raw_block&) = 0;
 
-    /// Makes a claim that waits, and all later ones, return nothing. Async-signal-safe.
+    /// Makes a claim that waits, and all later ones, return nothing; but a pipe that is woken while
+    /// it waits for its opening still hands out what came of it, as if it ended there.
+    /// Async-signal-safe.
     virtual void wake() noexcept = 0;
 };
 
@@ -101,8 +103,9 @@ struct recording_request {
     bool verify = false;
     int pipe_descriptor = 0; ///< where "-" reads; tests set it
 };
-/// Seconds from the recording's first sample, gaps included. Throws error{bad_request} for a time of
-/// day where the recording does not say when it starts, error{malformed} before its first sample.
+/// Seconds from the recording's first sample, gaps included. Throws error{bad_request} for a time
+/// of day where the recording does not say when it starts, error{malformed} before its first
+/// sample.
 [[nodiscard]] double seconds_into(const stream_facts&, const moment&, std::string_view option);
 
 /// Throws tonewalk::error naming the file, the field or byte, and the mend.
