@@ -119,7 +119,7 @@ std::string help_text(const command_facts& job, int columns) {
     page text{columns};
     text.paragraph(job.answers);
     text.heading("Usage");
-    text.line(fmt::format("  tonewalk {} {}[options]", job.name, operands_of(job)));
+    text.paragraph(fmt::format("tonewalk {} {}[options]", job.name, operands_of(job)), indent);
     text.line("");
     for (const option_facts& operand : job.operands) {
         text.entry(operand.names.front(), operand.text);

@@ -38,7 +38,8 @@ struct job {
 constexpr job jobs[] = {
     {"look", "What a recording holds, and whether its levels can be trusted.", add_look,
      "  tonewalk look walk.sigmf-meta\n"
-     "  tonewalk look raw.iq --format ci16_le --rate 2.4M --centre 145.2M --json look.json"},
+     "  tonewalk look walk.sigmf-meta --verify --json look.json\n"
+     "  tonewalk look raw.iq --format ci16_le --rate 2.4M --centre 145.2M"},
     {"hear", "Recover the audio.", add_hear,
      "  tonewalk hear walk.sigmf-meta -o walk.wav\n"
      "  tonewalk hear walk.sigmf-meta --loudness steady --band 300:3k -o walk.flac"},
