@@ -78,7 +78,8 @@ void line_spectrum::find_noise() {
 }
 
 double line_spectrum::floor_density() const {
-    return median(noise_) / (noise_bins_ * bin_hz());
+    const double floor = median(noise_);
+    return floor > least_power ? floor / (noise_bins_ * bin_hz()) : 0.0;
 }
 
 double line_spectrum::hz_of(double bin) const noexcept {

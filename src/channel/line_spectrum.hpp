@@ -40,7 +40,8 @@ public:
     [[nodiscard]] double noise_density(double hz) const noexcept { ///< full scale^2 per Hz
         return noise(bin_of(hz)) / (noise_bins_ * bin_hz());
     }
-    /// White noise under everything: the median of all neighbourhoods, full scale^2 per Hz.
+    /// White noise under everything: the median of all neighbourhoods, full scale^2 per Hz; 0 in
+    /// silence.
     [[nodiscard]] double floor_density() const;
     /// Highest within its main lobe, and 12 dB over the local noise.
     [[nodiscard]] bool is_line(std::size_t bin) const noexcept;

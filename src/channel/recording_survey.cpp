@@ -135,16 +135,17 @@ sheet describe(const found_carrier& c, const stream_facts& facts) {
 
 } // namespace
 
-recording_survey survey_recording(block_source& source, const search_request& request) {
+recording_survey survey_recording(block_source& source, const search_request& request,
+                                  const std::stop_token& stop) {
     const stream_facts& facts = source.facts();
     const std::optional<double> given_hz = given_carrier(request, facts);
     const survey_looks looks{source};
     recording_survey r;
     survey_sums sums;
     carrier_tracks carriers;
-    for (std::size_t k = 0; k < looks.size(); ++k) {
+    for (std::size_t k = 0; k == 0 || (k < looks.size() && !stop.stop_requested()); ++k) {
         opening look = looks[k];
-        if (look.what.frames < least_frames_searched && looks.size() > 1) {
+        if (look.what.frames < least_frames_searched && k > 0) {
             continue;
         }
         if (k == 0) {

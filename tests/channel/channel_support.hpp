@@ -29,10 +29,10 @@ inline std::vector<cf32> exponential(double hz, double rate_hz, std::size_t samp
 /// Runs one channel over a recording, on one thread, in blocks of so many cells.
 struct channel_run {
     channel_run(stream_facts facts, std::vector<std::byte> frames, const channel_plan& plan,
-                std::size_t cells_a_block = 16)
+                std::size_t cells_a_block = 16, const std::optional<iq_balance>& mend = {})
         : source{std::move(facts), std::move(frames)},
-          front{front_end::make(source.facts(), std::span{&plan, 1})}, chain{*front, 0, plan,
-                                                                             source.facts()} {
+          front{front_end::make(source.facts(), std::span{&plan, 1}, mend)}, chain{*front, 0, plan,
+                                                                                   source.facts()} {
         chain.listen(heard);
         const std::size_t samples = cells_a_block * front->cell();
         const auto space = front->make_workspace(samples);

@@ -215,6 +215,56 @@ TEST(FrontEnd, SeveralChannelsAtOnceGiveWhatEachGivesAlone) {
     }
 }
 
+TEST(FrontEnd, WithoutChannelsItCountsTheSamplesOnly) {
+    const auto iq = exponential(1000.0, 48e3, 5000, 0.25);
+    const stream_facts facts = facts_of("cf32_le", 48e3, iq.size());
+    const auto front = front_end::make(facts, {});
+    EXPECT_EQ(front->lead(), 0U);
+    EXPECT_EQ(front->delay_outputs(), 0U);
+    EXPECT_GE(front->cell(), 1U);
+    raw_block block;
+    const auto frames = bytes_of(iq);
+    block.bytes = frames;
+    block.count = iq.size();
+    block.ends_stretch = true;
+    raw_counts counts;
+    counts.cells.reserve(iq.size() / front->cell() + 1);
+    front->process(block, *front->make_workspace(block.count), counts, {});
+    double power = 0.0;
+    for (const cell_sums& sums : counts.cells) {
+        power += sums.ii + sums.qq;
+    }
+    EXPECT_NEAR(power, 5000.0 / 16.0, 1e-3);
+}
+
+TEST(FrontEnd, MendsTheImageBeforeTheChannelAndCountsSamplesAsRecorded) {
+    const double rate_hz = 48e3;
+    const cf64 k{0.1, -0.05};
+    auto iq = exponential(-700.0, rate_hz, 20000, 0.5);
+    double recorded = 0.0;
+    for (cf32& z : iq) {
+        z = cf32{cf64{z} + k * std::conj(cf64{z})};
+        recorded += std::norm(cf64{z});
+    }
+    const stream_facts facts = facts_of("cf32_le", rate_hz, iq.size());
+    const channel_plan at_image{700.0, false, 1000.0}, at_line{-700.0, false, 1000.0};
+    const iq_balance balance = balance_from_image(k, 0.0);
+    const auto level = [&](const channel_plan& plan, const std::optional<iq_balance>& mend) {
+        const channel_run run{facts, bytes_of(iq), plan, 16, mend};
+        return largest_magnitude(settled(run));
+    };
+    EXPECT_NEAR(level(at_image, {}), 0.5 * std::abs(k), 1e-4);
+    EXPECT_LT(level(at_image, balance), 1e-5); // what the filter leaves of the line
+    EXPECT_NEAR(level(at_line, balance), 0.5, 1e-4);
+    raw_counts counts;
+    process(*front_end::make(facts, {&at_line, 1}, balance), facts, bytes_of(iq), 0, &counts);
+    double counted = 0.0;
+    for (const cell_sums& sums : counts.cells) {
+        counted += sums.ii + sums.qq;
+    }
+    EXPECT_NEAR(counted / recorded, 1.0, 1e-9);
+}
+
 TEST(FrontEnd, CarrierThatNoStretchHoldsIsRefusedByName) {
     stream_facts facts = facts_of("ci16_le", 1e6, 1000);
     const auto refused = caught([&] { (void)front_for(facts, {600e3, false, 20e3}); });

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #pragma once
 
+#include <string>
 #include <utility>
 #include <vector>
 
@@ -60,6 +61,15 @@ inline scene_carrier pure(double offset_hz, double level_dbfs = -20.0) {
 
 inline bool has(const found_signal& f, note_code code) {
     return f.notes.has(code);
+}
+
+inline std::string text_of(const found_signal& f, note_code code) {
+    for (const note& each : f.notes.all()) {
+        if (each.code == code) {
+            return each.text + "; " + each.advice;
+        }
+    }
+    return "(no such note)";
 }
 
 } // namespace tonewalk::test

@@ -20,17 +20,9 @@ using test::modulated;
 using test::pure;
 using test::quiet_scene;
 using test::search;
+using test::text_of;
 
 constexpr double close_hz = 0.05;
-
-std::string text_of(const found_signal& f, note_code code) {
-    for (const note& each : f.notes.all()) {
-        if (each.code == code) {
-            return each.text + "; " + each.advice;
-        }
-    }
-    return "(no such note)";
-}
 
 void expect_found(const found_signal& f, double offset_hz, double tone_hz) {
     EXPECT_NEAR(f.offset_hz, offset_hz, close_hz);

@@ -245,6 +245,52 @@ TEST(RawCounts, AreTheSameHoweverTheInputIsCutIntoWholeCells) {
     }
 }
 
+// z = s + k conj(s) recorded; swap and mirror come first, as the receiver is seen through them.
+TEST(SampleConverter, TakesTheImageOut) {
+    const cf64 k{0.2, -0.1};
+    const std::vector<cf64> signal{{0.5, 0.25}, {-0.125, 0.75}, {0.0, -0.5}};
+    for (const bool swapped : {false, true}) {
+        stream_facts facts = facts_of("cf64_le");
+        facts.swap_iq = facts.inverted = swapped;
+        std::vector<double> stored;
+        for (const cf64 s : signal) {
+            const cf64 z = s + k * std::conj(s);
+            stored.push_back(swapped ? -z.imag() : z.real());
+            stored.push_back(swapped ? z.real() : z.imag());
+        }
+        const std::string bytes = bytes_of(stored);
+        std::vector<cf32> out(signal.size());
+        sample_converter{facts, k}.convert(std::as_bytes(std::span{bytes}), out);
+        for (std::size_t n = 0; n < out.size(); ++n) {
+            EXPECT_NEAR(static_cast<double>(out[n].real()), signal[n].real(), 1e-7);
+            EXPECT_NEAR(static_cast<double>(out[n].imag()), signal[n].imag(), 1e-7);
+        }
+    }
+}
+
+TEST(RawCounts, WithAnImageTakenOutAreThoseOfTheSamplesAsRecorded) {
+    const stream_facts facts = facts_of("ci16_le");
+    std::vector<std::int16_t> stored;
+    for (int n = 0; n < 600; ++n) {
+        stored.push_back(static_cast<std::int16_t>(n * 101 % 20011 - 9000));
+    }
+    const std::string bytes = bytes_of(stored);
+    const counted plain = counted_of(facts, bytes, 128);
+    counted mended;
+    mended.samples.resize(plain.samples.size());
+    mended.counts.cells.reserve(8);
+    sample_converter{facts, {0.2, -0.1}}.convert(std::as_bytes(std::span{bytes}), mended.samples, 0,
+                                                 128, mended.counts);
+    EXPECT_NE(mended.samples, plain.samples);
+    ASSERT_EQ(mended.counts.cells.size(), plain.counts.cells.size());
+    for (std::size_t c = 0; c < plain.counts.cells.size(); ++c) {
+        EXPECT_EQ(mended.counts.cells[c].iq, plain.counts.cells[c].iq);
+        EXPECT_EQ(mended.counts.cells[c].peak_power, plain.counts.cells[c].peak_power);
+    }
+    EXPECT_EQ(mended.counts.positive.counts, plain.counts.positive.counts);
+    EXPECT_EQ(mended.counts.negative.outermost, plain.counts.negative.outermost);
+}
+
 TEST(RailTally, CountsTheOutermostFourCodesOfEachRail) {
     // Positive: 7 twice, 6 once, 4 three times (3 and 0 are too far in or on no rail). Negative: -2
     // and -1.

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <optional>
+#include <stop_token>
 #include <vector>
 
 #include "tonewalk/channel/iq_balance.hpp"
@@ -24,10 +25,12 @@ struct recording_survey {
 
 /// Looks at 16 stretches of 1 s (a file), at the first 2 s (a pipe, a short file); at most 32 MiB
 /// each, one after another. A carrier that drifts less than 100 Hz from one to the next is one
-/// carrier. `mend_iq` has no effect: the survey shows the recording as it is. Throws
-/// error{bad_request, malformed} as find_signal does for what the user says of the signal, and for
-/// a recording without samples; that nothing is found is no error.
-[[nodiscard]] recording_survey survey_recording(block_source&, const search_request& = {});
+/// carrier. `mend_iq` has no effect: the survey shows the recording as it is. A stop ends it with
+/// what it has seen, one look at least. Throws error{bad_request, malformed} as find_signal does
+/// for what the user says of the signal, and for a recording without samples; that nothing is found
+/// is no error.
+[[nodiscard]] recording_survey survey_recording(block_source&, const search_request& = {},
+                                                const std::stop_token& = {});
 
 /// noise_density_dbfs_hz, iq_gain_error_db and iq_phase_error_deg with _u95, carriers; and the
 /// spectrum.
