@@ -3,19 +3,17 @@
 
 #include <cassert>
 
-#include <fmt/format.h>
+#include <fmt/core.h>
+
+#include "tonewalk/base/text.hpp"
 
 namespace tonewalk {
 namespace {
 
-// Whatever was read from a file and is quoted, it stays one line and leaves the terminal alone.
 std::string line(std::string_view what, std::string_view where, std::string_view mend) {
-    std::string text = fmt::format("{}{}{}{}{}", where, where.empty() ? "" : ": ", what,
-                                   mend.empty() ? "" : "; ", mend);
-    for (char& letter : text)
-        if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
-            letter = '?';
-    return text;
+    // What was read from a file may be in it.
+    return one_line(fmt::format("{}{}{}{}{}", where, where.empty() ? "" : ": ", what,
+                                mend.empty() ? "" : "; ", mend));
 }
 
 } // namespace

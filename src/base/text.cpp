@@ -11,6 +11,8 @@
 #include <memory>
 #include <system_error>
 
+#include <fmt/core.h>
+
 #include "tonewalk/base/error.hpp"
 
 namespace tonewalk {
@@ -82,13 +84,17 @@ bool has_decimal_comma(std::string_view text) {
     return parse_plain_number(with_point).has_value();
 }
 
-std::string in_quotes(std::string_view text) {
-    constexpr std::size_t longest = 80;
-    std::string line = valid_utf8(text.substr(0, longest));
-    for (char& letter : line)
+std::string one_line(std::string text) {
+    for (char& letter : text)
         if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
             letter = '?';
-    return '"' + line + (text.size() > longest ? "...\"" : "\"");
+    return text;
+}
+
+std::string in_quotes(std::string_view text) {
+    constexpr std::size_t longest = 80;
+    return '"' + one_line(valid_utf8(text.substr(0, longest))) +
+           (text.size() > longest ? "...\"" : "\"");
 }
 
 std::string valid_utf8(std::string_view text) {
@@ -100,6 +106,19 @@ std::string valid_utf8(std::string_view text) {
         text.remove_prefix(std::max<std::size_t>(length, 1));
     }
     return valid;
+}
+
+std::string json_string(std::string_view text) {
+    std::string quoted = "\"";
+    for (const char letter : valid_utf8(text)) {
+        if (letter == '"' || letter == '\\')
+            quoted += '\\';
+        if (static_cast<unsigned char>(letter) < 0x20)
+            quoted += fmt::format("\\u{:04x}", static_cast<unsigned>(letter));
+        else
+            quoted += letter;
+    }
+    return quoted + '"';
 }
 
 std::size_t width_of(std::string_view text) noexcept {

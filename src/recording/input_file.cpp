@@ -13,6 +13,7 @@
 #include <unistd.h>
 
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/base/text.hpp"
 #include "tonewalk/recording/sha512.hpp"
 
 namespace tonewalk {
@@ -27,11 +28,7 @@ namespace {
 } // namespace
 
 std::string shown(const std::filesystem::path& path) {
-    std::string name = path.string();
-    for (char& letter : name)
-        if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
-            letter = '?';
-    return name;
+    return one_line(path.string());
 }
 
 bool is_plain_file(const std::filesystem::path& path) noexcept {

@@ -2,9 +2,8 @@
 #include "tonewalk/report/csv_report.hpp"
 
 #include <cmath>
-#include <iterator>
 
-#include <fmt/format.h>
+#include <fmt/core.h>
 
 #include "tonewalk/base/text.hpp"
 
@@ -25,10 +24,10 @@ struct field_writer {
     std::string& line;
     void operator()(std::monostate) const {}
     void operator()(bool yes) const { line += yes ? "true" : "false"; }
-    void operator()(std::int64_t count) const { line += fmt::format_int(count).c_str(); }
+    void operator()(std::int64_t count) const { line += std::to_string(count); }
     void operator()(double figure) const {
         if (std::isfinite(figure))
-            fmt::format_to(std::back_inserter(line), "{}", figure);
+            line += fmt::format("{}", figure);
     }
     void operator()(const std::string& words) const { line += field(words); }
 };

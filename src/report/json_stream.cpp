@@ -4,17 +4,14 @@
 #include <cassert>
 #include <cmath>
 
-#include <fmt/format.h>
-#include <nlohmann/json.hpp>
+#include <fmt/core.h>
+
+#include "tonewalk/base/text.hpp"
 
 namespace tonewalk {
 namespace {
 
 constexpr std::size_t line_length = 100;
-
-std::string escaped(std::string_view text) {
-    return nlohmann::json(text).dump(-1, ' ', false, nlohmann::json::error_handler_t::replace);
-}
 
 } // namespace
 
@@ -38,7 +35,7 @@ void json_stream::end() {
 
 void json_stream::key(std::string_view name) {
     assert(!levels_.empty() && levels_.back().closing == '}' && !after_key_);
-    const std::string shown = escaped(name) + ": ";
+    const std::string shown = json_string(name) + ": ";
     separate(shown.size());
     emit(shown);
     after_key_ = true;
@@ -57,19 +54,17 @@ void json_stream::value(const cell& held) {
 }
 
 void json_stream::text(std::string_view words) {
-    put(escaped(words));
+    put(json_string(words));
 }
 
 void json_stream::number(double figure) {
     if (!std::isfinite(figure))
         return null();
-    fmt::memory_buffer digits;
-    fmt::format_to(fmt::appender(digits), "{}", figure);
-    put({digits.data(), digits.size()});
+    put(fmt::format("{}", figure));
 }
 
 void json_stream::whole(std::int64_t count) {
-    put(fmt::format_int(count).c_str());
+    put(std::to_string(count));
 }
 
 void json_stream::truth(bool yes) {

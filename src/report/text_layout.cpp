@@ -86,11 +86,7 @@ std::string text_layout::grid(const std::vector<std::vector<std::string>>& rows,
 }
 
 std::string harmless(std::string_view foreign) {
-    std::string text = valid_utf8(foreign);
-    for (char& letter : text)
-        if (static_cast<unsigned char>(letter) < 0x20 || letter == 0x7F)
-            letter = '?';
-    return text;
+    return one_line(valid_utf8(foreign));
 }
 
 } // namespace tonewalk

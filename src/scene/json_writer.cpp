@@ -4,7 +4,7 @@
 #include <cmath>
 #include <utility>
 
-#include <fmt/format.h>
+#include <fmt/core.h>
 
 #include "tonewalk/base/text.hpp"
 
@@ -17,26 +17,13 @@ void json_writer::place(std::string_view key) {
     first_ = false;
     if (key.empty())
         return;
-    quote(key);
+    text_ += json_string(key);
     text_ += ": ";
-}
-
-void json_writer::quote(std::string_view value) {
-    text_ += '"';
-    for (const char each : valid_utf8(value)) {
-        if (each == '"' || each == '\\')
-            text_ += '\\';
-        if (static_cast<unsigned char>(each) < 0x20)
-            text_ += fmt::format("\\u{:04x}", static_cast<unsigned>(each));
-        else
-            text_ += each;
-    }
-    text_ += '"';
 }
 
 void json_writer::put_number(double value) {
     if (std::isfinite(value))
-        fmt::format_to(std::back_inserter(text_), "{}", value);
+        text_ += fmt::format("{}", value);
     else
         text_ += "null";
 }
@@ -95,7 +82,7 @@ json_writer& json_writer::yes_no(std::string_view key, bool value) {
 
 json_writer& json_writer::text(std::string_view key, std::string_view value) {
     place(key);
-    quote(value);
+    text_ += json_string(value);
     return *this;
 }
 

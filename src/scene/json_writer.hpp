@@ -29,7 +29,6 @@ public:
 
 private:
     void place(std::string_view key);
-    void quote(std::string_view value);
     void put_number(double value);
 
     std::string text_, closers_; ///< closers_: what ends the open objects and arrays

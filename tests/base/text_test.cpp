@@ -40,6 +40,17 @@ TEST(InQuotes, FitsOneLine) {
     EXPECT_LT(in_quotes(std::string(1000, 'x')).size(), 100U);
 }
 
+TEST(OneLine, MakesControlCharactersHarmless) {
+    EXPECT_EQ(one_line("a\r\n\x1B[31m\x7F\tGr\xC3\xBC\xC3\x9F"), "a???[31m??Gr\xC3\xBC\xC3\x9F");
+}
+
+// RFC 8259, section 7: quotation mark, reverse solidus and U+0000 to U+001F must be escaped.
+TEST(JsonString, EscapesWhatJsonMustAndNothingElse) {
+    EXPECT_EQ(json_string("a \"b\" c:\\d /"), R"("a \"b\" c:\\d /")");
+    EXPECT_EQ(json_string(std::string_view{"\0\n\x1F\x7F", 4}), "\"\\u0000\\u000a\\u001f\x7F\"");
+    EXPECT_EQ(json_string("Gr\xC3\xBC\xFF"), "\"Gr\xC3\xBC\xEF\xBF\xBD\"");
+}
+
 TEST(ReadTextFile, DropsTheByteOrderMarkAndNamesWhatIsMissing) {
     const test::temporary_folder folder;
     test::write_file(folder / "a.txt", "\xEF\xBB\xBFhello");

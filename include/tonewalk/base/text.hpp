@@ -24,11 +24,17 @@ namespace tonewalk {
 /// Whether a comma stands where a decimal point would make the text a number ("12,5").
 [[nodiscard]] bool has_decimal_comma(std::string_view text);
 
+/// Control characters made "?": stays one line and leaves a terminal alone.
+[[nodiscard]] std::string one_line(std::string text);
+
 /// In double quotes, fit for one line: control characters become "?", long text is cut.
 [[nodiscard]] std::string in_quotes(std::string_view text);
 
 /// Well-formed UTF-8: every byte that is not part of it becomes U+FFFD.
 [[nodiscard]] std::string valid_utf8(std::string_view text);
+
+/// As JSON writes it: well-formed UTF-8 in double quotes, what must be escaped as \uXXXX.
+[[nodiscard]] std::string json_string(std::string_view text);
 
 /// Characters, not bytes.
 [[nodiscard]] std::size_t width_of(std::string_view text) noexcept;
