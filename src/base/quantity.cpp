@@ -189,13 +189,6 @@ double parse_db(std::string_view text, std::string_view option) {
     return *value;
 }
 
-double parse_number(std::string_view text, std::string_view option) {
-    const auto value = parse_plain_number(trimmed(text));
-    if (!value)
-        refuse(text, option, "a number", "12.5");
-    return *value;
-}
-
 long parse_whole(std::string_view text, std::string_view option, long lowest, long highest) {
     std::string_view digits = trimmed(text);
     if (digits.starts_with('+') && !digits.starts_with("+-"))

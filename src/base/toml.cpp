@@ -298,13 +298,6 @@ double toml_table::need_number(std::string_view key, std::string_view example) c
     return *found;
 }
 
-std::string toml_table::need_text(std::string_view key, std::string_view example) const {
-    auto found = text(key);
-    if (!found)
-        throw missing(*node_, key, fmt::format("add {} = {}", key, example));
-    return *std::move(found);
-}
-
 toml_table toml_table::need_table(std::string_view key) const {
     auto found = table(key);
     if (!found)

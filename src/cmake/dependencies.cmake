@@ -27,7 +27,7 @@ endfunction()
 tonewalk_plain_library(fftw3f_threads fftw3.h fftw3f_threads)
 tonewalk_plain_library(csv csv.h csv)
 tonewalk_plain_library(eigen eigen3/Eigen/Core "")
-tonewalk_plain_library(boost_math boost/math/distributions/non_central_f.hpp "")
+tonewalk_plain_library(boost_math boost/math/distributions/non_central_chi_squared.hpp "")
 
 # What a program must link beside the static library (the rest is headers); tests/install notices one missing.
 set(tonewalk_link_names fftw3f_threads fftw3f sndfile archive crypto tomlplusplus csv fmt)

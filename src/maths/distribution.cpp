@@ -9,7 +9,6 @@
 #include <boost/math/distributions/chi_squared.hpp>
 #include <boost/math/distributions/fisher_f.hpp>
 #include <boost/math/distributions/non_central_chi_squared.hpp>
-#include <boost/math/distributions/non_central_f.hpp>
 #include <boost/math/distributions/normal.hpp>
 #include <boost/math/distributions/students_t.hpp>
 #include <boost/math/tools/toms748_solve.hpp>
@@ -32,17 +31,6 @@ double chi_square_cdf(double x, double degrees) {
 }
 double f_quantile(double p, double degrees_above, double degrees_below) {
     return bm::quantile(bm::fisher_f{degrees_above, degrees_below}, p);
-}
-
-double noncentral_f_cdf(double x, double degrees_above, double degrees_below,
-                        double noncentrality) {
-    if (x <= 0.0) {
-        return 0.0;
-    }
-    if (noncentrality <= 0.0) {
-        return bm::cdf(bm::fisher_f{degrees_above, degrees_below}, x);
-    }
-    return bm::cdf(bm::non_central_f{degrees_above, degrees_below, noncentrality}, x);
 }
 
 double noncentral_chi_square_cdf(double x, double degrees, double noncentrality) {
@@ -97,14 +85,6 @@ double crossing(Excess excess, double guess) {
 }
 
 } // namespace
-
-double noncentral_f_noncentrality(double x, double p, double degrees_above, double degrees_below) {
-    return crossing(
-        [&](double noncentrality) {
-            return noncentral_f_cdf(x, degrees_above, degrees_below, noncentrality) - p;
-        },
-        2.0 * degrees_above * x);
-}
 
 double line_power_inverse(double x, double p, double degrees, double noise_degrees) {
     return crossing(

@@ -26,11 +26,9 @@ public:
     void write(std::span<const std::byte> bytes);
     void commit();
 
-    /// Where the bytes are now, for a library that wants a path or descriptor (libsndfile).
-    [[nodiscard]] const std::filesystem::path& path_in_progress() const noexcept {
-        return temporary_;
-    }
-    [[nodiscard]] int descriptor() const noexcept { return descriptor_; }
+    [[nodiscard]] int descriptor() const noexcept {
+        return descriptor_;
+    } ///< for a library that writes
     [[nodiscard]] bool in_place() const noexcept { return in_place_; } ///< a pipe or device
     [[nodiscard]] bool closed_by_reader() const noexcept {
         return reader_gone_;

@@ -32,7 +32,6 @@ using moment = std::variant<double, utc_time>;
 [[nodiscard]] moment parse_moment(std::string_view text, std::string_view option);
 
 [[nodiscard]] double parse_db(std::string_view text, std::string_view option); ///< "-3", "-3dB"
-[[nodiscard]] double parse_number(std::string_view text, std::string_view option);
 [[nodiscard]] long parse_whole(std::string_view text, std::string_view option, long lowest,
                                long highest);
 

@@ -37,7 +37,6 @@ public:
     /// The same for keys that must be there; `example` completes the mend: "add rate_hz =
     /// 2400000.0".
     [[nodiscard]] double need_number(std::string_view key, std::string_view example) const;
-    [[nodiscard]] std::string need_text(std::string_view key, std::string_view example) const;
     [[nodiscard]] toml_table need_table(std::string_view key) const;
 
     /// Every key of this table and of the tables taken from it must have been asked for by now.

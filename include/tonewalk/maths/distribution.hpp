@@ -9,12 +9,6 @@ namespace tonewalk {
 [[nodiscard]] double chi_square_quantile(double p, double degrees);
 [[nodiscard]] double chi_square_cdf(double x, double degrees);
 [[nodiscard]] double f_quantile(double p, double degrees_above, double degrees_below);
-/// P(X <= x) of the noncentral F distribution.
-[[nodiscard]] double noncentral_f_cdf(double x, double degrees_above, double degrees_below,
-                                      double noncentrality);
-/// The noncentrality at which P(X <= x) = p; 0 where even 0 gives less than p.
-[[nodiscard]] double noncentral_f_noncentrality(double x, double p, double degrees_above,
-                                                double degrees_below);
 [[nodiscard]] double noncentral_chi_square_cdf(double x, double degrees, double noncentrality);
 
 /// A line in noise of which only an estimate is known, from `noise_degrees` degrees of freedom.
