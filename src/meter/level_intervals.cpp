@@ -50,6 +50,8 @@ std::uint32_t weakness(const line_power& found, const line_power& left, record_f
 } // namespace
 
 void level_intervals::complete(level_log& log, const common& c) {
+    log.carrier_bound = c.background.carrier.bound;
+    log.tone_bound = c.background.tone.bound;
     for (level_record& r : log.records) {
         r.tone.power /= c.tone_response * c.tone_response;
         r.tone.sigma /= c.tone_response;

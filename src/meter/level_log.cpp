@@ -5,6 +5,7 @@
 #include <cmath>
 #include <utility>
 
+#include "tonewalk/base/decibel.hpp"
 #include "tonewalk/maths/quantile.hpp"
 
 namespace tonewalk {
@@ -171,6 +172,23 @@ const line_power& line_of(const level_record& r, quantity which) noexcept {
 
 const interval_estimate& level_of(const level_record& r, quantity which) noexcept {
     return which == quantity::carrier ? r.carrier_dbfs : r.tone_dbfs;
+}
+
+interval_estimate with_common_doubts(const interval_estimate& level, const level_log& log,
+                                     quantity which) noexcept {
+    const double bound = which == quantity::carrier ? log.carrier_bound : log.tone_bound;
+    if (bound == 0.0 && log.common_u95_db == 0.0) {
+        return level;
+    }
+    const auto moved = [bound](double db, double sign) {
+        const double amplitude = decibel::from_db(db).amplitude_ratio() + sign * bound;
+        return amplitude > 0.0 ? decibel::from_amplitude_ratio(amplitude).db() : not_measured;
+    };
+    interval_estimate r = level;
+    r.low95 = level.value - std::hypot(level.value - moved(level.low95, -1.0), log.common_u95_db);
+    r.high95 = level.value + std::hypot(moved(level.high95, 1.0) - level.value, log.common_u95_db);
+    r.u95 = std::isnan(level.u95) ? not_measured : 0.5 * (r.high95 - r.low95);
+    return r;
 }
 
 level_summary summarise(const level_log& log, quantity which) {

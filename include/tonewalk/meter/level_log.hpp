@@ -54,10 +54,11 @@ struct level_log {
     double carrier_offset_hz = not_measured; ///< power-weighted mean of the curve
     double tone_hz = not_measured;           ///< refined over all records; NaN without a tone
     double width_hz = 0.0;                   ///< flat width of the channel
-    double common_u95_db = 0.0;        ///< part of every level's interval that all levels share
-    std::optional<utc_time> start_utc; ///< of the recording's first sample
-    std::vector<double> detector_tone_dbfs; ///< one a record, or empty
-    std::string detector_column;            ///< its JSON name
+    double common_u95_db = 0.0; ///< part of every level's interval that all levels share
+    double carrier_bound = 0.0, tone_bound = 0.0; ///< likewise, an amplitude: of a background
+    std::optional<utc_time> start_utc;            ///< of the recording's first sample
+    std::vector<double> detector_tone_dbfs;       ///< one a record, or empty
+    std::string detector_column;                  ///< its JSON name
     note_set doubts;
     curve strip; ///< channel power against time and frequency
 
@@ -68,6 +69,10 @@ struct level_log {
 /// The line of `record` that `which` names.
 [[nodiscard]] const line_power& line_of(const level_record&, quantity) noexcept;
 [[nodiscard]] const interval_estimate& level_of(const level_record&, quantity) noexcept;
+
+/// A level that was fitted to several records, with the doubts that all levels of the log share.
+[[nodiscard]] interval_estimate with_common_doubts(const interval_estimate&, const level_log&,
+                                                   quantity) noexcept;
 
 /// Levels over the whole log; undetected records count as lowest, null records not at all. A
 /// quantile that falls on an undetected record is null with the largest bound of such records as
