@@ -249,7 +249,8 @@ TEST(RecordingSurvey, IsDescribedForPeopleAndPrograms) {
     EXPECT_NEAR(number(carriers.parts[1], "carrier_to_noise_density_dbhz") -
                     number(carriers.parts[1], "snr_db"),
                 10.0 * std::log10(2.0 * (8000.0 - 3100.6)), 0.01); // less than 20 kHz are there
-    EXPECT_EQ(std::get<std::string>(*first.find("carrier_option")), "--carrier +2500");
+    EXPECT_EQ(std::get<std::string>(*first.find("carrier_option")),
+              "--carrier " + format_option_hz(2500.0, true));
     EXPECT_EQ(std::get<std::string>(*carriers.parts[1].find("carrier_option")), "--carrier -3101");
     const auto& tones = std::get<sheet_table>(first.items.back());
     EXPECT_EQ(tones.key, "tones");

@@ -286,6 +286,18 @@ TEST(SignalSearch, FindsTheToneThroughFades) {
     }
 }
 
+// What stands before the fade and what comes after it add up to a line beside the true frequency.
+TEST(SignalSearch, FindsTheToneWhereADeepFadePartsTheOpening) {
+    scene_carrier c = modulated(-6901.0, -27.4, 2956.74, 35.0);
+    c.fades = {{0.44, 0.0}, {0.99, -60.0}, {1.54, 0.0}};
+    for (std::uint64_t seed = 1; seed <= 5; ++seed) {
+        c.tones.front().frequency_hz += 0.13;
+        scene s = quiet_scene({c});
+        s.seed = seed;
+        EXPECT_NEAR(search(s).tone_hz.value_or(0.0), c.tones.front().frequency_hz, 0.1) << seed;
+    }
+}
+
 // Noise and silence
 
 TEST(CoverageSignalSearch, NoiseAloneIsNeverACarrier) {
