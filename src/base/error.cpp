@@ -12,8 +12,8 @@ namespace {
 
 std::string line(std::string_view what, std::string_view where, std::string_view mend) {
     // What was read from a file may be in it.
-    return one_line(fmt::format("{}{}{}{}{}", where, where.empty() ? "" : ": ", what,
-                                mend.empty() ? "" : "; ", mend));
+    return one_line(valid_utf8(fmt::format("{}{}{}{}{}", where, where.empty() ? "" : ": ", what,
+                                           mend.empty() ? "" : "; ", mend)));
 }
 
 } // namespace

@@ -38,7 +38,6 @@ std::string_view mend_for(int code) {
     case EEXIST:
         return "choose another name or add --force";
     case ENOENT:
-    case ENOTDIR:
         return "make the folder first";
     case EACCES:
     case EPERM:

@@ -71,8 +71,8 @@ std::optional<double> in_units(const measure& typed, const std::array<unit_power
 
 constexpr auto frequency_units = std::to_array<unit_power>({
     {"", 0},
-    {"k", 3},
     {"K", 3},
+    {"k", 3}, // the later one is what we write
     {"M", 6},
     {"G", 9},
 });
@@ -222,7 +222,7 @@ std::string format_option_hz(double hz, bool as_offset) {
     std::string shortest = fmt::format("{}", hz);
     for (const auto& [unit, power] : frequency_units) {
         const std::string number = fmt::format("{}", hz / std::pow(10.0, power));
-        if (number.size() + unit.size() < shortest.size() && scaled(number, power) == hz)
+        if (number.size() + unit.size() <= shortest.size() && scaled(number, power) == hz)
             shortest = fmt::format("{}{}", number, unit);
     }
     return as_offset && !std::signbit(hz) ? '+' + shortest : shortest;

@@ -18,6 +18,7 @@
 namespace tonewalk {
 namespace {
 
+constexpr std::size_t most_text_bytes = std::size_t{64} << 20;
 constexpr std::string_view white_space = " \t\r\n\f\v";
 
 /// Length of the UTF-8 sequence that starts here; 0 where none does.
@@ -144,6 +145,11 @@ std::vector<std::string> wrapped_lines(std::string_view text, std::size_t column
     return lines;
 }
 
+void refuse_utf16(std::string_view text, std::string_view where) {
+    if (text.starts_with("\xFF\xFE") || text.starts_with("\xFE\xFF"))
+        throw error{fault::malformed, "is text in UTF-16", where, "save it as UTF-8"};
+}
+
 std::string read_text_file(const std::filesystem::path& path) {
     std::error_code ignored;
     if (std::filesystem::is_directory(path, ignored))
@@ -154,10 +160,14 @@ std::string read_text_file(const std::filesystem::path& path) {
         throw_unreadable(path, errno);
     std::string text;
     std::array<char, 65536> part;
-    while (const std::size_t read = std::fread(part.data(), 1, part.size(), file.get()))
-        text.append(part.data(), read);
+    while (const std::size_t read = std::fread(part.data(), 1, part.size(), file.get())) {
+        if (text.append(part.data(), read).size() > most_text_bytes)
+            throw error{fault::malformed, "is too long for a text file", valid_utf8(path.string()),
+                        "check that it is the right file"};
+    }
     if (std::ferror(file.get()) != 0)
         throw_unreadable(path, errno);
+    refuse_utf16(text, valid_utf8(path.string()));
     constexpr std::string_view byte_order_mark = "\xEF\xBB\xBF";
     if (text.starts_with(byte_order_mark))
         text.erase(0, byte_order_mark.size());

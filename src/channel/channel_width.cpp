@@ -63,7 +63,7 @@ void choose_width(found_signal& f, double offset_hz, const search_request& reque
         throw error{fault::malformed,
                     fmt::format("the band ends {} off the carrier, before the tone",
                                 format_hz(automatic.room_hz / 2.0, 6)),
-                    facts.name, "record with the carrier further from the band's edge"};
+                    facts.where(), "record with the carrier further from the band's edge"};
     }
     f.width_hz = automatic.hz();
     if (f.width_hz < automatic.wanted_hz) {

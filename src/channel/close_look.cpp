@@ -118,7 +118,7 @@ close_look::close_look(const looked_at& what, double offset_hz)
         throw error{fault::malformed,
                     fmt::format("lasts {:g} s, too short to find a signal in",
                                 static_cast<double>(what.frames) / what.facts->sample_rate_hz),
-                    what.facts->name, "give a longer recording, or correct --rate"};
+                    what.facts->where(), "give a longer recording, or correct --rate"};
     }
     spectrum_.emplace(transform_size(samples_.size()), rate_hz_);
     spectrum_->add(std::span<const cf32>{samples_}.first(spectrum_->size()));

@@ -42,7 +42,7 @@ double widest_hz(std::span<const channel_plan> plans) {
                 fmt::format("its band of {} does not hold a channel of {} at {}",
                             format_hz(facts.sample_rate_hz), format_hz(plan.width_hz),
                             format_option_hz(plan.carrier_hz, !plan.absolute)),
-                facts.name, "give another --carrier or a smaller --width"};
+                facts.where(), "give another --carrier or a smaller --width"};
 }
 
 } // namespace

@@ -50,8 +50,9 @@ std::vector<found_carrier> find_carriers(searched& s, block_source& source,
         }
     }
     if (carriers.empty()) {
-        throw error{fault::malformed, "no carrier stands out of the noise", source.facts().name,
-                    "give --carrier, as an offset with a sign or as a frequency"};
+        throw error{fault::malformed, "no carrier stands out of the noise", source.facts().where(),
+                    "give --carrier, as an offset with a sign or as a frequency; check --format "
+                    "and --rate where the recording does not say them"};
     }
     return carriers;
 }

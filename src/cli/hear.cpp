@@ -120,7 +120,7 @@ void refuse_endless_silence(const stream_facts& facts) {
         throw error{fault::malformed,
                     fmt::format("has gaps of {:.1f} days together, which would all become silence",
                                 silence_s / most_silence_s),
-                    facts.name, "give --from and --until for the part to hear"};
+                    facts.where(), "give --from and --until for the part to hear"};
     }
 }
 

@@ -56,10 +56,6 @@ constexpr const char* program_examples =
     "  tonewalk hear walk.sigmf-meta -o walk.wav\n"
     "  receiver | tonewalk levels - --format ci16_le --rate 2.4M";
 
-void complain(const std::string& line) {
-    fmt::print(stderr, "tonewalk: {}\n", line);
-}
-
 /// What the program does without a job.
 struct program_options {
     bool version = false, licences = false, manual = false;
@@ -86,7 +82,12 @@ int run_without_job(const program_options& o, const option_tree& tree) {
         chosen("--completion", o.shell, completion_shells);
         print_out(completion_script(tree, o.shell));
     } else {
-        complain("no job given; see tonewalk --help");
+        std::vector<std::string> names;
+        for (const command_facts& job : tree.jobs) {
+            names.push_back(job.name);
+        }
+        complain(fmt::format("no job given; give one of {}, or see tonewalk --help",
+                             fmt::join(names, ", ")));
         return usage_status;
     }
     return 0;
@@ -131,7 +132,7 @@ int run(int argc, char** argv) {
     try {
         return actions.at(app.get_subcommands().front())({{argv, argv + argc}, stopping});
     } catch (const stopped_early&) {
-        complain("stopped before anything was measured");
+        complain(stopped_line);
         return stopping.exit_status();
     }
 }

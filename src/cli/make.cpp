@@ -26,6 +26,7 @@ int run_make(const make_options& o, const program& program) {
         make_recording(what, o.base, o.force,
                        {.stop = program.stopping.token(), .progress = &progress, .threads = 1});
     if (made.stopped) {
+        complain(stopped_line);
         return program.stopping.exit_status();
     }
     if (!o.quiet) {

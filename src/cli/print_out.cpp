@@ -10,6 +10,7 @@
 #include <unistd.h>
 
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/base/text.hpp"
 
 namespace tonewalk::cli {
 
@@ -31,6 +32,10 @@ void print_out(std::string_view text) {
     throw error{fault::unwritable,
                 fmt::format("cannot be written ({})", std::generic_category().message(errno)),
                 "standard output", "make room, or send it elsewhere"};
+}
+
+void complain(const std::string& line) {
+    fmt::print(stderr, "tonewalk: {}\n", one_line(valid_utf8(line)));
 }
 
 } // namespace tonewalk::cli

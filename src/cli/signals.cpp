@@ -6,6 +6,7 @@
 
 #include <unistd.h>
 
+#include "print_out.hpp"
 #include "tonewalk/base/output_file.hpp"
 
 namespace tonewalk::cli {
@@ -41,6 +42,9 @@ void stop_watch::watch(const std::stop_token& ending) {
             continue;
         }
         if (status_.load() != 0 || !holding_.load()) {
+            if (status_.load() == 0) {
+                complain(stopped_line);
+            }
             remove_temporaries();
             _exit(128 + signal);
         }

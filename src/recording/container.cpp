@@ -22,13 +22,16 @@ constexpr bool native_big = std::endian::native == std::endian::big;
 // A file open in libsndfile.
 class sound_file {
 public:
-    explicit sound_file(const std::filesystem::path& path)
+    sound_file(const std::filesystem::path& path, bool begins_as_one)
         : handle_{::sf_open(path.c_str(), SFM_READ, &info_)} {
-        if (!handle_)
-            throw error{fault::malformed,
-                        fmt::format("is no container that can be read ({})",
-                                    trimmed(::sf_strerror(nullptr))),
-                        shown(path), "give --format and --rate if it is a raw recording"};
+        if (handle_)
+            return;
+        std::string_view reason = trimmed(::sf_strerror(nullptr));
+        reason.remove_suffix(reason.ends_with('.') ? 1 : 0);
+        throw error{fault::malformed, fmt::format("is no container that can be read ({})", reason),
+                    shown(path),
+                    begins_as_one ? "copy it again, or correct its header"
+                                  : "give --format and --rate if it is a raw recording"};
     }
     sound_file(sound_file&& other) noexcept
         : info_{other.info_}, handle_{std::exchange(other.handle_, nullptr)} {}
@@ -197,7 +200,7 @@ bool named_like_container(const std::filesystem::path& path) {
 }
 
 std::unique_ptr<block_source> open_container(const recording_request& request, input_file file) {
-    sound_file sound{request.path};
+    sound_file sound{request.path, looks_like_container(file)};
     check_channels(sound, file);
     const coding_facts* const coding = plain_coding(sound.coding());
     const auto data = coding ? find_data_chunk(file) : std::nullopt;

@@ -68,17 +68,16 @@ std::optional<found_recording> find_sigmf(const recording_request& request) {
 
 // Facts of samples that say nothing of themselves.
 stream_facts raw_facts(const recording_request& request) {
-    const std::string name = request.path == "-" ? "standard input" : shown(request.path);
-    if (!request.format)
-        throw error{fault::bad_request, "does not say how its samples are stored", name,
-                    "give --format and --rate, such as --format ci16_le --rate 2.4M"};
     stream_facts facts;
     facts.name = request.path;
+    if (!request.format)
+        throw error{fault::bad_request, "does not say how its samples are stored", facts.where(),
+                    "give --format and --rate, such as --format ci16_le --rate 2.4M"};
     facts.format = *request.format;
     facts.format_name = facts.format.name();
     if (!facts.format.is_float())
         facts.code_bits = static_cast<unsigned>(8 * facts.format.component_bytes());
-    facts.sample_rate_hz = rate_to_use(request, std::nullopt, name);
+    facts.sample_rate_hz = rate_to_use(request, std::nullopt, facts.where());
     return facts;
 }
 
@@ -95,10 +94,10 @@ std::unique_ptr<block_source> open_raw(const recording_request& request, input_f
 }
 
 stream_facts pipe_facts(const recording_request& request) {
+    stream_facts facts = raw_facts(request);
     if (request.verify)
         throw error{fault::bad_request, "a pipe cannot be verified before it is measured",
-                    shown(request.path), "leave --verify out, or give a file"};
-    stream_facts facts = raw_facts(request);
+                    facts.where(), "leave --verify out, or give a file"};
     facts.seekable = false;
     facts.stretches.emplace_back();
     (void)apply(request, {}, facts);

@@ -94,7 +94,7 @@ private:
 class pipe_source final : public block_source {
 public:
     pipe_source(stream_facts facts, int descriptor, bool owned)
-        : facts_{std::move(facts)}, reader_{shown(facts_.name), descriptor, owned} {
+        : facts_{std::move(facts)}, reader_{facts_.where(), descriptor, owned} {
         assert(facts_.stretches.size() == 1);
         limit_ = std::exchange(facts_.stretches.front().count, std::nullopt);
     }
@@ -193,12 +193,12 @@ private:
     [[noreturn]] void throw_empty() const {
         const sample_index first = facts_.stretches.front().first;
         if (first == 0)
-            throw error{fault::malformed, "holds no samples", shown(facts_.name),
+            throw error{fault::malformed, "holds no samples", facts_.where(),
                         "check what writes to it"};
         throw error{fault::malformed,
                     fmt::format("ended before --from {:g} s",
                                 static_cast<double>(first) / facts_.sample_rate_hz),
-                    shown(facts_.name), "give an earlier --from"};
+                    facts_.where(), "give an earlier --from"};
     }
 
     stream_facts facts_;

@@ -128,6 +128,7 @@ private:
 };
 
 json parse_json(std::string_view text, std::string_view name) {
+    refuse_utf16(text, name);
     duplicate_watch watch{name};
     try {
         return json::parse(text, [&](int depth, json::parse_event_t event, json& parsed) {

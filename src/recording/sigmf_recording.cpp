@@ -39,12 +39,11 @@ std::string data_name_of(const sigmf_metadata& metadata, const std::string& meta
 
 // SigMF lets a data set that is there count for more than metadata_only.
 [[noreturn]] void throw_without_data(const sigmf_metadata& metadata, const std::string& where,
-                                     const std::string& data_name) {
+                                     std::string_view what, std::string_view mend) {
     if (metadata.metadata_only)
         throw error{fault::malformed, "holds metadata only, no samples", where,
                     "give the recording that it was made from"};
-    throw error{fault::unreadable, fmt::format("its data file {} is missing", in_quotes(data_name)),
-                where, "put it in the same folder"};
+    throw error{fault::unreadable, what, where, mend};
 }
 
 // One recording in an archive; members are named without the ending.
@@ -140,8 +139,14 @@ found_recording find_by_metadata(const std::filesystem::path& path) {
     const std::string name = shown(path);
     sigmf_metadata metadata = parse_sigmf_metadata(read_text(text, {0, text.size()}, name), name);
     const std::filesystem::path data = data_name_of(metadata, path.string());
-    if (!is_plain_file(data))
-        throw_without_data(metadata, name, data.filename().string());
+    if (!is_plain_file(data)) {
+        std::error_code unknown;
+        throw_without_data(
+            metadata, name,
+            fmt::format("its data file {} is {}", in_quotes(data.filename().string()),
+                        std::filesystem::exists(data, unknown) ? "no plain file" : "missing"),
+            "put it in the same folder");
+    }
     input_file file{data};
     const byte_range whole{0, file.size()};
     return {std::move(metadata), name, shown(data), std::move(file), whole};
@@ -158,7 +163,9 @@ found_recording find_in_archive(const std::filesystem::path& path, const std::st
     const std::string data_name = data_name_of(metadata, text.name);
     const archive_member* const data = find_member(members, data_name, archive);
     if (!data)
-        throw_without_data(metadata, name, data_name);
+        throw_without_data(metadata, name,
+                           fmt::format("the archive has no file {}", in_quotes(data_name)),
+                           "pack the recording again with its data");
     const byte_range range = usable(*data, archive).range;
     return {std::move(metadata), name, fmt::format("{}, member {}", archive, in_quotes(data_name)),
             std::move(file), range};

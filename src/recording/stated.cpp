@@ -21,7 +21,7 @@ void apply_lane(const recording_request& request, stream_facts& facts) {
         throw error{fault::malformed,
                     fmt::format("has {} lane{}, there is no lane {}", facts.lanes,
                                 facts.lanes == 1 ? "" : "s", facts.lane),
-                    shown(facts.name),
+                    facts.where(),
                     facts.lanes == 1 ? std::string{"leave --lane out"}
                                      : fmt::format("give --lane 0 to {}", facts.lanes - 1)};
 }
@@ -83,8 +83,8 @@ std::optional<stretch_facts> cut(const stretch_facts& whole, sample_index from,
         throw error{fault::malformed,
                     fmt::format("--from {:g} s lies past the end at {:g} s",
                                 static_cast<double>(from) / rate, static_cast<double>(end) / rate),
-                    shown(facts.name), "give an earlier --from"};
-    throw error{fault::malformed, "holds no samples between --from and --until", shown(facts.name),
+                    facts.where(), "give an earlier --from"};
+    throw error{fault::malformed, "holds no samples between --from and --until", facts.where(),
                 "widen them: that time lies in a gap"};
 }
 
@@ -93,7 +93,7 @@ std::vector<std::size_t> apply_cut(const recording_request& request, stream_fact
     const sample_index until = request.until ? position_of(*request.until, facts, "--until")
                                              : std::numeric_limits<sample_index>::max();
     if (until <= from)
-        throw error{fault::bad_request, "--until does not lie after --from", shown(facts.name),
+        throw error{fault::bad_request, "--until does not lie after --from", facts.where(),
                     "exchange them, or leave one out"};
     std::vector<stretch_facts> kept;
     std::vector<std::size_t> origins;
@@ -130,12 +130,12 @@ double seconds_into(const stream_facts& facts, const moment& when, std::string_v
                     fmt::format("{} is a time of day, and the recording "
                                 "does not say when it starts",
                                 option),
-                    shown(facts.name), "give --start-utc, or seconds from the first sample"};
+                    facts.where(), "give --start-utc, or seconds from the first sample"};
     }
     if (!(seconds >= 0.0))
         throw error{std::holds_alternative<double>(when) ? fault::bad_request : fault::malformed,
                     fmt::format("{} lies before the recording's first sample", option),
-                    shown(facts.name), "give a later time"};
+                    facts.where(), "give a later time"};
     return seconds;
 }
 
@@ -181,7 +181,7 @@ double rate_to_use(const recording_request& request, std::optional<double> state
 std::vector<std::size_t> apply(const recording_request& request, stated_facts stated,
                                stream_facts& facts) {
     if (facts.stretches.empty())
-        throw error{fault::malformed, "holds no samples", shown(facts.name),
+        throw error{fault::malformed, "holds no samples", facts.where(),
                     "check that it was written and copied whole"};
     facts.swap_iq = request.swap_iq;
     facts.inverted = request.inverted;

@@ -25,4 +25,8 @@ double stream_facts::span_s() const noexcept {
     return static_cast<double>(end - stretches.front().position) / sample_rate_hz;
 }
 
+std::string stream_facts::where() const {
+    return name == "-" ? "standard input" : name;
+}
+
 } // namespace tonewalk

@@ -56,8 +56,8 @@ std::string text_layout::pairs(const std::vector<pair>& lines, std::size_t inden
         const bool fits =
             std::max(label, label_width) + indent + 2 + width_of(each.value) <= columns_;
         text += std::string(indent, ' ') + each.label;
-        text += fits ? padding(label_width, label) + "  " : '\n' + std::string(indent + 2, ' ');
-        text += each.value + '\n';
+        text += fits ? padding(label_width, label) + "  " + each.value + '\n'
+                     : '\n' + paragraph(each.value, indent + 2);
     }
     return text;
 }

@@ -291,11 +291,11 @@ std::string verdict_text(const note_set& notes, const sheet& result, const text_
             doubts.push_back(layout.coloured(layout.paragraph(name(each.code), 2), ink::strong) +
                              layout.paragraph("seen: " + harmless(each.text), 4, 2) +
                              layout.paragraph("do: " + harmless(each.advice), 4, 2));
-    const std::string headline = doubts.empty()
-                                     ? "no doubt: nothing seen speaks against its levels\n"
-                                 : doubts.size() == 1 ? "1 doubt\n"
-                                                      : fmt::format("{} doubts\n", doubts.size());
-    return '\n' + layout.coloured(headline, doubts.empty() ? ink::strong : ink::alarm) +
+    const std::string headline = doubts.empty() ? "no doubt: nothing seen speaks against its levels"
+                                 : doubts.size() == 1 ? "1 doubt"
+                                                      : fmt::format("{} doubts", doubts.size());
+    return '\n' +
+           layout.coloured(layout.paragraph(headline), doubts.empty() ? ink::strong : ink::alarm) +
            fmt::format("{}", fmt::join(doubts, "")) + unjudged_text(result, layout);
 }
 

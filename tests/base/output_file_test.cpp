@@ -3,6 +3,7 @@
 
 #include <array>
 #include <atomic>
+#include <cerrno>
 #include <csignal>
 #include <optional>
 #include <thread>
@@ -245,6 +246,14 @@ TEST(OutputFile, HasLongNamesToo) {
     file.write("x");
     file.commit();
     EXPECT_EQ(test::read_file(folder / name), "x");
+}
+
+TEST(WriteFully, GivesTheReasonWhereNotAllCanBeWritten) {
+    const int full = ::open("/dev/full", O_WRONLY), closed = -1;
+    EXPECT_EQ(write_fully(full, "text"), ENOSPC);
+    EXPECT_EQ(write_fully(closed, "text"), EBADF);
+    EXPECT_EQ(write_fully(closed, ""), 0);
+    ::close(full);
 }
 
 TEST(RemoveTemporaries, RemovesThoseInProgressAndNothingElse) {

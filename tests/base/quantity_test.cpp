@@ -109,12 +109,23 @@ TEST(FormatHz, UsesEngineeringPrefixesWithoutTrailingZeros) {
 
 TEST(FormatOptionHz, GivesTheShortestTypingThatReadsBackEqual) {
     EXPECT_EQ(format_option_hz(3200000.0, true), "+3.2M");
-    EXPECT_EQ(format_option_hz(-12500.0, true), "-12500");
+    EXPECT_EQ(format_option_hz(-12500.0, true), "-12.5k");
     EXPECT_EQ(format_option_hz(145200000.0, false), "145.2M");
     for (const double hz :
          {1.0, 1029.3333333333333, 433920000.0, 123456789.125, 8333.333333333334, 1e9, 0.0}) {
         EXPECT_EQ(parse_hz(format_option_hz(hz, false), "--carrier"), hz);
         EXPECT_EQ(parse_signed_hz(format_option_hz(-hz, true), "--carrier").hz, -hz);
+    }
+}
+
+TEST(Quantities, TellTimesAsPeopleTypeThem) {
+    EXPECT_EQ(format_option_seconds(0.2), "200ms");
+    EXPECT_EQ(format_option_seconds(0.001), "1ms");
+    EXPECT_EQ(format_option_seconds(0.0041), "4.1ms");
+    EXPECT_EQ(format_option_seconds(1.0), "1s");
+    EXPECT_EQ(format_option_seconds(90.5), "90.5s");
+    for (const double seconds : {0.2, 0.0041, 1e-6, 3600.0, 1.25}) {
+        EXPECT_DOUBLE_EQ(parse_seconds(format_option_seconds(seconds), "--window"), seconds);
     }
 }
 

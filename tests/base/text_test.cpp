@@ -61,4 +61,15 @@ TEST(ReadTextFile, DropsTheByteOrderMarkAndNamesWhatIsMissing) {
     EXPECT_EQ(test::caught([&] { (void)read_text_file(folder.path()); }).kind, fault::unreadable);
 }
 
+TEST(Text, BreaksBetweenWords) {
+    using lines = std::vector<std::string>;
+    EXPECT_EQ(wrapped_lines("one two  three", 7), (lines{"one two", "three"}));
+    EXPECT_EQ(wrapped_lines("one two three", 9, 3), (lines{"one two", "three"}));
+    EXPECT_EQ(wrapped_lines("one two is it", 7, 2), (lines{"one two", "is it"}));
+    EXPECT_EQ(wrapped_lines("one two is it", 7, 3), (lines{"one two", "is", "it"}));
+    EXPECT_EQ(wrapped_lines("unbreakable it is", 5), (lines{"unbreakable", "it is"}));
+    EXPECT_EQ(wrapped_lines("90\u00B0 is", 6), (lines{"90\u00B0 is"})); // characters, not bytes
+    EXPECT_EQ(wrapped_lines("  ", 5), lines{});
+}
+
 } // namespace

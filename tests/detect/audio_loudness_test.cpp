@@ -114,7 +114,7 @@ TEST(SteadyLoudness, RefusesAGainAndARecordingWithoutACarrier) {
     const auto refused = [](const audio_options& o, const carrier_curve& c) {
         return caught([&] { (void)render(std::vector<float>(10), o, c); });
     };
-    EXPECT_EQ(refused({.mode = loudness::steady}, none).kind, fault::bad_request);
+    EXPECT_EQ(refused({.mode = loudness::steady}, none).kind, fault::malformed);
     const carrier_curve one{std::vector{1.0}, std::vector{0.1}};
     EXPECT_TRUE(refused({.mode = loudness::steady, .gain_db = 3.0}, one).says("--gain"));
     EXPECT_FALSE(refused({.mode = loudness::steady}, one).kind);

@@ -221,5 +221,20 @@ TEST(AudioBand, RefusesWhatCannotBeHad) {
     EXPECT_TRUE(band({}, {}, not_measured).says("--audio-rate"));
 }
 
+TEST(AudioBand, IsJudgedAsFarAsCanBeBeforeTheRecordingIsKnown) {
+    const auto judged = [](double low, double high) {
+        return caught([&] { check_audio_band({.low_hz = low, .high_hz = high}); }).kind;
+    };
+    EXPECT_FALSE(judged(300.0, 21600.0));
+    EXPECT_EQ(judged(300.0, 21601.0), fault::bad_request); // 0.45 of the audio rate of 48 kHz
+    EXPECT_EQ(judged(3000.0, 300.0), fault::bad_request);
+    const auto in_a_channel = caught([] {
+        (void)choose_audio_band(
+            {.rate_hz = 10000.0, .width_hz = 8000.0, .low_hz = 300.0, .high_hz = 5000.0});
+    });
+    EXPECT_EQ(in_a_channel.kind, fault::malformed); // it does not fit this recording
+    EXPECT_TRUE(in_a_channel.says("--band 300:5k"));
+}
+
 } // namespace
 } // namespace tonewalk

@@ -225,7 +225,7 @@ open(name + b'.sigmf-data', 'wb').write(ramp(10))
     EXPECT_EQ(source->facts().name, request.path);
     EXPECT_EQ(drain(*source).samples, ramp(0, 10));
     request.path += "\n missing";
-    EXPECT_TRUE(error_of_opening(request).says("caf\xE9 \xFF? missing"));
+    EXPECT_TRUE(error_of_opening(request).says("caf\uFFFD \uFFFD? missing"));
 }
 
 TEST(MalformedRaw, EachIsOneLineWithTheMend) {

@@ -144,6 +144,24 @@ TEST(PipeSource, WakeEndsAClaimThatWaits) {
     ::close(ends[1]);
 }
 
+TEST(PipeSource, WakeEndsAnOpeningThatWaitsAndWhatCameOfItIsHandedOut) {
+    std::array<int, 2> ends{};
+    ASSERT_EQ(::pipe(ends.data()), 0);
+    const std::string bytes = ramp_bytes(250) + "xyz";
+    ASSERT_EQ(::write(ends[1], bytes.data(), bytes.size()), std::ssize(bytes));
+    const auto source = open_recording(pipe_request(ends[0]));
+    const std::jthread waker{[&] {
+        std::this_thread::sleep_for(50ms);
+        source->wake();
+    }};
+    EXPECT_EQ(source->opening(1000).size(), 250 * source->facts().frame_bytes());
+    const auto all = drain(*source, 100, 7);
+    EXPECT_EQ(all.samples, file_samples(ramp_bytes(250), pipe_request(0)));
+    EXPECT_TRUE(all.blocks.back().ends_stretch);
+    ::close(ends[0]);
+    ::close(ends[1]);
+}
+
 TEST(PipeSource, ANamedPipeIsReadLikeOne) {
     const temporary_folder folder;
     const std::filesystem::path path = folder / "fifo";

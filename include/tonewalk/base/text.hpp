@@ -44,7 +44,11 @@ namespace tonewalk {
 [[nodiscard]] std::vector<std::string> wrapped_lines(std::string_view text, std::size_t columns,
                                                      std::size_t hanging = 0);
 
-/// The whole of a small text file, without a UTF-8 byte-order mark. Throws error{unreadable}.
+/// Throws error{malformed} for what begins as text in UTF-16 does.
+void refuse_utf16(std::string_view text, std::string_view where);
+
+/// The whole of a small text file, without a UTF-8 byte-order mark. Throws error{unreadable};
+/// error{malformed} for UTF-16 and for what is longer than text ever is.
 [[nodiscard]] std::string read_text_file(const std::filesystem::path&);
 
 } // namespace tonewalk

@@ -46,6 +46,7 @@ struct stream_facts {
     samples() const noexcept;                         ///< to be measured, all stretches
     [[nodiscard]] double duration_s() const noexcept; ///< samples / rate; 0 when unknown
     [[nodiscard]] double span_s() const noexcept;     ///< first to last sample, gaps included
+    [[nodiscard]] std::string where() const; ///< its name in complaints: not "-", "standard input"
 };
 
 /// Frames (all lanes) of one stretch as stored: `lead` samples of history, then `count`. History is
