@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <memory>
 #include <optional>
 #include <span>
 
@@ -407,10 +408,11 @@ sheet_table describe(const extrema_result& result) {
     t.key = "extrema";
     t.rows = result.found.size();
     t.form = table_form::as_records;
-    const std::vector<extremum>& found = result.found;
+    // Its own, so that the sheet outlives the result.
+    const auto found = std::make_shared<const std::vector<extremum>>(result.found);
     const auto column = [&](const char* key, const char* unit, auto read) {
         t.columns.push_back(
-            {key, unit, [&found, read](std::size_t row) { return cell{read(found[row])}; }});
+            {key, unit, [found, read](std::size_t row) { return cell{read((*found)[row])}; }});
     };
     column("kind", "", [](const extremum& e) {
         return std::string{e.kind == extremum_kind::peak ? "peak" : "null"};
