@@ -4,6 +4,7 @@
 #include <algorithm>
 #include <bit>
 #include <cmath>
+#include <limits>
 #include <optional>
 
 #include <fmt/core.h>
@@ -27,26 +28,42 @@ std::int64_t full_scale_code(const stream_facts& facts) {
     return (std::int64_t{1} << (bits - 1)) - 1;
 }
 
+/// Steps from one code that occurs to the next: 1, or more where samples lie on a coarser grid or
+/// are few; 1 where one code alone occurs.
+std::int64_t spacing_of(const rail_tally& rail) {
+    std::int64_t least = std::numeric_limits<std::int64_t>::max();
+    for (std::size_t k = 1; k < rail.codes.size() && rail.codes[k] > 0; ++k) {
+        least = std::min(least, rail.codes[k - 1] - rail.codes[k]);
+    }
+    return rail.codes[1] > 0 ? least : 1;
+}
+
 /// Component samples on a rail that holds more of them than a signal's own turning points put
-/// there: the extreme code of a clean sine holds 3.0 times what the next three hold on average.
-/// Codes that never occur are left out: samples may lie on a grid coarser than their codes (12 bits
-/// left-aligned in 16, floats made from integers). Where that leaves none, only the format's full
-/// scale tells a clipped rail from a grid; nothing otherwise.
+/// there. None are sharper than a sine's, whose outermost d steps hold a share that grows with the
+/// root of d: of two codes side by side the outer one 3.0 times what the next three hold on
+/// average. A rail of one code only is clipped at the format's full scale; nothing can be told
+/// elsewhere.
 std::optional<std::uint64_t> clipped_on(const rail_tally& rail, std::int64_t full_scale) {
-    double sum = 0.0, occupied = 0.0;
-    for (std::size_t k = 1; k < rail.counts.size(); ++k) {
-        sum += static_cast<double>(rail.counts[k]);
-        occupied += rail.counts[k] > 0 ? 1.0 : 0.0;
+    double others = 0.0, occupied = 0.0;
+    std::int64_t innermost = rail.outermost();
+    for (std::size_t k = 1; k < rail.codes.size() && rail.codes[k] > 0; ++k) {
+        others += static_cast<double>(rail.counts[k]);
+        occupied += 1.0;
+        innermost = rail.codes[k];
     }
-    const double expected = occupied > 0.0 ? clipped_ratio * sum / occupied : 0.0;
-    const double scatter = clipped_sigmas * std::sqrt(expected + clipped_ratio);
-    if (static_cast<double>(rail.counts[0]) <= expected + scatter) {
-        return 0;
+    const auto found = static_cast<double>(rail.counts[0]);
+    if (occupied == 0.0) {
+        if (found <= clipped_sigmas * std::sqrt(clipped_ratio)) {
+            return 0; // a handful is chance
+        }
+        return rail.outermost() < full_scale ? std::nullopt : std::optional{rail.counts[0]};
     }
-    if (occupied == 0.0 && rail.outermost < full_scale) {
-        return std::nullopt;
-    }
-    return rail.counts[0];
+    const auto steps = static_cast<double>((rail.outermost() - innermost) / spacing_of(rail));
+    const double share = 1.0 / std::sqrt(1.0 + steps); // of a sine's, on the outermost
+    const double margin = clipped_ratio / 3.0;
+    const double expected = margin * others * share / (1.0 - share);
+    const double most = expected + clipped_sigmas * std::sqrt(expected + clipped_ratio);
+    return found > std::max(most, clipped_ratio * others / occupied) ? rail.counts[0] : 0;
 }
 
 double power_db(double power) {
@@ -113,9 +130,9 @@ void raw_watch::judge_levels(raw_result& r) const {
 }
 
 void raw_watch::judge_clipping(raw_result& r) const {
-    const std::int64_t codes = std::max<std::int64_t>(0, positive_.outermost) +
-                               std::max<std::int64_t>(0, negative_.outermost) + 1;
-    if (codes < least_codes) {
+    const std::int64_t codes = std::max<std::int64_t>(0, positive_.outermost()) +
+                               std::max<std::int64_t>(0, negative_.outermost());
+    if (codes / std::min(spacing_of(positive_), spacing_of(negative_)) + 1 < least_codes) {
         return;
     }
     const std::int64_t full_scale = full_scale_code(*facts_);

@@ -118,24 +118,25 @@ std::int32_t code_of(Value value, unsigned shift) noexcept {
     }
 }
 
-// The rail of the given sign: the outermost code of the chunk and its three neighbours.
+// The rail of the given sign: from the outermost code of the chunk inwards, as far as the tally
+// keeps any.
 template <int Sign>
 void tally_rail(const std::array<std::int32_t, 2 * chunk>& codes, rail_tally& rail) noexcept {
-    std::int32_t extreme = 0;
+    const auto magnitude = [](std::int32_t code) { return std::int64_t{Sign} * code; };
+    std::int32_t wanted = 0;
     for (const std::int32_t code : codes)
-        extreme = Sign > 0 ? std::max(extreme, code) : std::min(extreme, code);
-    rail_tally here{.outermost = std::int64_t{Sign} * extreme};
-    const auto steps = static_cast<std::int64_t>(here.counts.size());
-    if (extreme == 0 || here.outermost <= rail.outermost - steps)
-        return;
-    for (std::int32_t k = 0; k < std::min(steps, here.outermost); ++k) {
-        const std::int32_t wanted = extreme - Sign * k;
+        wanted = Sign > 0 ? std::max(wanted, code) : std::min(wanted, code);
+    while (wanted != 0 && magnitude(wanted) >= rail.codes.back()) {
         std::uint32_t found = 0;
-        for (const std::int32_t code : codes)
+        std::int32_t next = 0;
+        for (const std::int32_t code : codes) {
+            const bool inside = Sign > 0 ? code < wanted : code > wanted;
             found += code == wanted ? 1U : 0U;
-        here.counts[static_cast<std::size_t>(k)] = found;
+            next = Sign > 0 ? std::max(next, inside ? code : 0) : std::min(next, inside ? code : 0);
+        }
+        rail.add(magnitude(wanted), found);
+        wanted = next;
     }
-    rail.merge(here);
 }
 
 template <class Value>
@@ -285,20 +286,25 @@ void convert_cell(const conversion& how, const std::byte* frames, std::span<cf32
 
 } // namespace
 
-void rail_tally::merge(const rail_tally& other) noexcept {
-    if (other.outermost < 0)
+void rail_tally::add(std::int64_t code, std::uint64_t count) noexcept {
+    std::size_t place = 0;
+    while (place < codes.size() && codes[place] > code)
+        ++place;
+    if (place == codes.size())
         return;
-    const rail_tally& outer = outermost >= other.outermost ? *this : other;
-    const rail_tally& inner = outermost >= other.outermost ? other : *this;
-    rail_tally both = outer;
-    const auto steps = static_cast<std::int64_t>(counts.size());
-    for (std::int64_t k = 0; inner.outermost >= 0 && k < steps; ++k) {
-        const std::int64_t place = outer.outermost - inner.outermost + k;
-        if (place < steps)
-            both.counts[static_cast<std::size_t>(place)] +=
-                inner.counts[static_cast<std::size_t>(k)];
+    if (codes[place] != code) {
+        const auto first = static_cast<std::ptrdiff_t>(place);
+        std::move_backward(codes.begin() + first, codes.end() - 1, codes.end());
+        std::move_backward(counts.begin() + first, counts.end() - 1, counts.end());
+        codes[place] = code;
+        counts[place] = 0;
     }
-    *this = both;
+    counts[place] += count;
+}
+
+void rail_tally::merge(const rail_tally& other) noexcept {
+    for (std::size_t k = 0; k < other.codes.size() && other.codes[k] > 0; ++k)
+        add(other.codes[k], other.counts[k]);
 }
 
 void raw_counts::clear() noexcept {

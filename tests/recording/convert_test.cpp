@@ -173,9 +173,9 @@ TEST(RawCounts, SumsOfExtremeI32CodesAreExact) {
     EXPECT_EQ(sums.ii, 4096.0);
     EXPECT_EQ(sums.iq, 4096.0);
     EXPECT_EQ(sums.peak_power, 2.0);
-    EXPECT_EQ(result.counts.negative.outermost, std::int64_t{1} << 31);
+    EXPECT_EQ(result.counts.negative.outermost(), std::int64_t{1} << 31);
     EXPECT_EQ(result.counts.negative.counts[0], 8192U);
-    EXPECT_EQ(result.counts.positive.outermost, -1);
+    EXPECT_EQ(result.counts.positive.outermost(), -1);
 }
 
 TEST(RawCounts, FollowExchangeAndMirrorAndKeepRealSamplesAsStored) {
@@ -239,7 +239,7 @@ TEST(RawCounts, AreTheSameHoweverTheInputIsCutIntoWholeCells) {
             EXPECT_EQ(counts.cells[k].ii, whole.counts.cells[k].ii);
             EXPECT_EQ(counts.cells[k].iq, whole.counts.cells[k].iq);
         }
-        EXPECT_EQ(counts.positive.outermost, whole.counts.positive.outermost);
+        EXPECT_EQ(counts.positive.outermost(), whole.counts.positive.outermost());
         EXPECT_EQ(counts.positive.counts, whole.counts.positive.counts);
         EXPECT_EQ(counts.negative.counts, whole.counts.negative.counts);
     }
@@ -288,28 +288,31 @@ TEST(RawCounts, WithAnImageTakenOutAreThoseOfTheSamplesAsRecorded) {
         EXPECT_EQ(mended.counts.cells[c].peak_power, plain.counts.cells[c].peak_power);
     }
     EXPECT_EQ(mended.counts.positive.counts, plain.counts.positive.counts);
-    EXPECT_EQ(mended.counts.negative.outermost, plain.counts.negative.outermost);
+    EXPECT_EQ(mended.counts.negative.outermost(), plain.counts.negative.outermost());
 }
 
-TEST(RailTally, CountsTheOutermostFourCodesOfEachRail) {
-    // Positive: 7 twice, 6 once, 4 three times (3 and 0 are too far in or on no rail). Negative: -2
-    // and -1.
+using codes = std::array<std::int64_t, 4>;
+using counts = std::array<std::uint64_t, 4>;
+
+TEST(RailTally, CountsTheOutermostFourCodesThatOccurOnEachRail) {
+    // Positive: 7 twice, 6 once, 4 three times, 3 once (2 is too far in, 0 on no rail). Negative:
+    // -2 and -1.
     const auto result =
-        counted_of(facts_of("ci8"), packed("12b", "7,7,6,4, 4,4,3,0, -2,-1,-1,0"), 64);
+        counted_of(facts_of("ci8"), packed("14b", "7,7,6,4, 4,4,3,2, 2,0,-2,-1,-1,0"), 64);
     const rail_tally& positive = result.counts.positive;
-    EXPECT_EQ(positive.outermost, 7);
-    EXPECT_EQ(positive.counts, (std::array<std::uint64_t, 4>{2, 1, 0, 3}));
-    EXPECT_EQ(result.counts.negative.outermost, 2);
-    EXPECT_EQ(result.counts.negative.counts, (std::array<std::uint64_t, 4>{1, 2, 0, 0}));
+    EXPECT_EQ(positive.codes, (codes{7, 6, 4, 3}));
+    EXPECT_EQ(positive.counts, (counts{2, 1, 3, 1}));
+    EXPECT_EQ(result.counts.negative.codes, (codes{2, 1, -1, -1}));
+    EXPECT_EQ(result.counts.negative.counts, (counts{1, 2, 0, 0}));
 }
 
 TEST(RailTally, OfANarrowerResolutionCountsItsOwnSteps) {
     stream_facts facts = facts_of("ci32_le"); // 24 bits in 32: codes 256 apart
     facts.code_bits = 24;
     const auto result = counted_of(facts, packed("<4i", "1280, 1024, -512, 256"), 64);
-    EXPECT_EQ(result.counts.positive.outermost, 5);
-    EXPECT_EQ(result.counts.positive.counts, (std::array<std::uint64_t, 4>{1, 1, 0, 0}));
-    EXPECT_EQ(result.counts.negative.outermost, 2);
+    EXPECT_EQ(result.counts.positive.codes, (codes{5, 4, 1, -1}));
+    EXPECT_EQ(result.counts.positive.counts, (counts{1, 1, 1, 0}));
+    EXPECT_EQ(result.counts.negative.outermost(), 2);
 }
 
 TEST(RailTally, OfFloatsHasStepsOfTwoToMinusFifteenOrLess) {
@@ -318,25 +321,24 @@ TEST(RailTally, OfFloatsHasStepsOfTwoToMinusFifteenOrLess) {
     const float one_in = 1.0F - std::exp2(-16.0F), two_in = 1.0F - std::exp2(-15.0F);
     const auto result =
         counted_of(facts_of("cf32_le"), bytes_of<float>({1.0F, one_in, two_in, -0.5F}), 64);
-    EXPECT_EQ(result.counts.positive.counts, (std::array<std::uint64_t, 4>{1, 1, 1, 0}));
-    EXPECT_EQ(result.counts.negative.counts, (std::array<std::uint64_t, 4>{1, 0, 0, 0}));
+    const std::int64_t top = result.counts.positive.outermost();
+    EXPECT_EQ(result.counts.positive.codes, (codes{top, top - 1, top - 2, -1}));
+    EXPECT_EQ(result.counts.positive.counts, (counts{1, 1, 1, 0}));
+    EXPECT_EQ(result.counts.negative.counts, (counts{1, 0, 0, 0}));
 }
 
 TEST(RailTally, MergesExactlyInAnyOrder) {
-    const rail_tally a{10, {1, 2, 3, 4}}, b{12, {5, 0, 0, 6}}, c{30, {7, 0, 0, 0}}, none;
-    rail_tally left = a;
-    left.merge(b);
-    EXPECT_EQ(left.outermost, 12);
-    EXPECT_EQ(left.counts, (std::array<std::uint64_t, 4>{5, 0, 1, 8}));
-    rail_tally right = b;
-    right.merge(none);
-    right.merge(a);
-    EXPECT_EQ(right.counts, left.counts);
-    rail_tally first = none;
-    first.merge(left);
-    EXPECT_EQ(first.counts, left.counts);
-    first.merge(c);
-    EXPECT_EQ(first.counts, c.counts);
+    const rail_tally a{{10, 9, 8, 7}, {1, 2, 3, 4}}, b{{12, 9, 3, -1}, {5, 6, 7, 0}},
+        c{{30, -1, -1, -1}, {7, 0, 0, 0}}, none;
+    const rail_tally all[] = {a, b, c, none};
+    for (std::array<std::size_t, 4> order :
+         {std::array<std::size_t, 4>{0, 1, 2, 3}, {3, 2, 1, 0}, {1, 0, 3, 2}, {2, 3, 0, 1}}) {
+        rail_tally merged;
+        for (const std::size_t k : order)
+            merged.merge(all[k]);
+        EXPECT_EQ(merged.codes, (codes{30, 12, 10, 9}));
+        EXPECT_EQ(merged.counts, (counts{7, 5, 1, 8}));
+    }
 }
 
 TEST(NonFinite, SamplesAreZeroedLeftOutOfSumsAndListed) {

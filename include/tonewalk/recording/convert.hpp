@@ -21,13 +21,16 @@ struct cell_sums {
 };
 
 /// How often the outermost codes occur on one rail (positive, negative) of both components
-/// together. counts[0] is the outermost code itself, counts[k] the code k steps nearer to zero.
-/// Codes: integers as stored (unsigned less 2^(bits-1), shifted to code_bits); floats by the bits
-/// of |x| above the lowest 8 (steps of 2^-15 or less). Zero is on neither rail.
+/// together; codes that never occur are left out, so that a grid coarser than the codes (12 bits
+/// left-aligned in 16, floats made from integers) looks like any other. Codes: integers as stored
+/// (unsigned less 2^(bits-1), shifted to code_bits); floats by the bits of |x| above the lowest 8
+/// (steps of 2^-15 or less). Zero is on neither rail.
 struct rail_tally {
-    std::int64_t outermost = -1; ///< |code|; -1: none seen
-    std::array<std::uint64_t, 4> counts{};
-    void merge(const rail_tally&) noexcept; ///< exact, in any order
+    std::array<std::int64_t, 4> codes{-1, -1, -1, -1}; ///< |code|, outermost first; -1: none seen
+    std::array<std::uint64_t, 4> counts{};             ///< of each
+    [[nodiscard]] std::int64_t outermost() const noexcept { return codes.front(); }
+    void add(std::int64_t code, std::uint64_t count) noexcept; ///< code > 0
+    void merge(const rail_tally&) noexcept;                    ///< exact, in any order
 };
 
 /// What one block says about the raw samples; merged in block order, so that neither block size nor
