@@ -136,9 +136,7 @@ int run_hear(const hear_options& o, const program& program) {
 
     measurement m = open_measurement(o.recording, o.signal, program);
     refuse_endless_silence(m.facts());
-    constexpr double every_s = 0.1, usual_window_s = 0.2, tone_cycles = 4.0;
-    const double window_s = std::max(usual_window_s, tone_cycles / m.found.tone_hz.value_or(1e9));
-    line_meter::config meter_config = m.meter(m.grid(every_s, window_s));
+    line_meter::config meter_config = m.meter(usual_grid(m));
     meter_config.envelope_in_use = choice.detector == detector_kind::envelope;
     line_meter meter{meter_config};
     choice.band.rate_hz = m.chain->rate_hz();
@@ -156,6 +154,7 @@ int run_hear(const hear_options& o, const program& program) {
                      .settle_samples = m.chain->settle_samples()},
                     spool};
     m.chain->listen(meter);
+    const std::unique_ptr<compression_watch> squeezed = watch_compression(m, meter_config.grid);
     m.chain->listen(path);
     const pass_report pass = run(m, o.running, program);
     need_record(pass, meter);
@@ -163,7 +162,9 @@ int run_hear(const hear_options& o, const program& program) {
 
     level_log log = log_or_nothing(meter, m);
     const quantity used = log.has_tone() ? quantity::tone : quantity::carrier;
-    add_level_notes(log, used);
+    const compression_result compression = squeezed ? squeezed->result() : compression_result{};
+    log.doubts.merge(compression.doubts);
+    add_level_notes(log, used, {.compressed = compression.compressed, .heard = true});
     const report_context context = context_of(m, pass, program, log, {"hear", o.detector, used});
     choice.options.start_s = start_s;
     choice.options.audio_samples =

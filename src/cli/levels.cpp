@@ -160,6 +160,7 @@ int run_levels(const levels_options& o, const program& program) {
     }
     line_meter meter{meter_config};
     m.chain->listen(meter);
+    const std::unique_ptr<compression_watch> squeezed = watch_compression(m, grid);
     std::unique_ptr<tone_reading> reading;
     if (choice.detector && m.found.tone_hz) {
         reading = std::make_unique<tone_reading>(
@@ -178,7 +179,9 @@ int run_levels(const levels_options& o, const program& program) {
         log.detector_tone_dbfs = reading->tone_dbfs(log.tone_hz);
         log.detector_column = reading->column_key();
     }
-    add_level_notes(log, used);
+    const compression_result compression = squeezed ? squeezed->result() : compression_result{};
+    log.doubts.merge(compression.doubts);
+    add_level_notes(log, used, {.compressed = compression.compressed});
     add_background_note(log, used);
     std::optional<reference_drift> drift;
     if (references) {

@@ -6,9 +6,7 @@
 
 #include "measurement.hpp"
 #include "tonewalk/channel/recording_survey.hpp"
-#include "tonewalk/meter/compression_watch.hpp"
 #include "tonewalk/meter/gain_control.hpp"
-#include "tonewalk/meter/level_notes.hpp"
 #include "tonewalk/recording/segment_list.hpp"
 #include "tonewalk/recording/verify.hpp"
 #include "tonewalk/report/json_report.hpp"
@@ -50,42 +48,32 @@ opened open_with_hash(recording_request request) {
 /// Level log and compression of the best carrier, to tell how the receiver's gain behaved.
 class gain_witness {
 public:
-    explicit gain_witness(const measurement& m) {
-        constexpr double every_s = 0.1, usual_window_s = 0.2, tone_cycles = 4.0;
-        const double lowest_hz = m.found.tone_hz.value_or(1e9);
-        const record_grid grid = m.grid(every_s, std::max(usual_window_s, tone_cycles / lowest_hz));
-        meter_ = std::make_unique<line_meter>(m.meter(grid));
-        m.chain->listen(*meter_);
-        if (m.found.tone_hz) {
-            compression_ = std::make_unique<compression_watch>(
-                compression_watch::config{.rate_hz = grid.rate_hz,
-                                          .tone_hz = *m.found.tone_hz,
-                                          .width_hz = m.found.width_hz,
-                                          .settle_samples = grid.settle_samples});
-            m.chain->listen(*compression_);
-        }
+    explicit gain_witness(measurement& m) : meter_{m.meter(usual_grid(m))} {
+        m.chain->listen(meter_);
+        compression_ = watch_compression(m, usual_grid(m));
     }
 
     /// gain_control and compression; notes of both.
-    [[nodiscard]] sheet result(note_set& notes) const {
-        const level_log log = meter_->has_records() ? meter_->take_result() : level_log{};
-        const gain_control_result gain = judge_gain_control(log);
+    [[nodiscard]] sheet result(note_set& notes) {
+        const compression_result compression =
+            compression_ ? compression_->result() : compression_result{};
+        const level_log log = meter_.has_records() ? meter_.take_result() : level_log{};
+        const gain_control_result gain = judge_gain_control(log, compression.compressed);
         notes.merge(gain.doubts);
+        notes.merge(compression.doubts);
         sheet s;
         s.add("gain_control", describe(gain));
         if (compression_) {
-            const compression_result compression = compression_->result();
-            notes.merge(compression.doubts);
             s.add("compression", describe(compression));
         }
-        if (meter_->has_records()) {
+        if (!log.records.empty()) {
             s.add(log.strip);
         }
         return s;
     }
 
 private:
-    std::unique_ptr<line_meter> meter_;
+    line_meter meter_;
     std::unique_ptr<compression_watch> compression_;
 };
 

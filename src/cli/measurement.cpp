@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 #include "measurement.hpp"
 
+#include <algorithm>
 #include <cstdio>
 
 #include <fmt/core.h>
@@ -72,6 +73,25 @@ measurement open_measurement(const recording_options& recording, const signal_op
     found_signal found =
         unless_stopped(*source, program, [&] { return find_signal(*source, request); });
     return measurement_of(std::move(source), std::move(found));
+}
+
+record_grid usual_grid(const measurement& m) {
+    constexpr double every_s = 0.1, window_s = 0.2, tone_cycles = 4.0;
+    const double slowest_s = m.found.tone_hz ? tone_cycles / *m.found.tone_hz : 0.0;
+    return m.grid(every_s, std::max(window_s, slowest_s));
+}
+
+std::unique_ptr<compression_watch> watch_compression(measurement& m, const record_grid& grid) {
+    if (!m.found.tone_hz) {
+        return nullptr;
+    }
+    auto watch = std::make_unique<compression_watch>(
+        compression_watch::config{.rate_hz = grid.rate_hz,
+                                  .tone_hz = *m.found.tone_hz,
+                                  .width_hz = m.found.width_hz,
+                                  .settle_samples = grid.settle_samples});
+    m.chain->listen(*watch);
+    return watch;
 }
 
 pass_report run(measurement& m, const running_options& options, const program& program) {

@@ -13,6 +13,7 @@
 #include "tonewalk/base/output_file.hpp"
 #include "tonewalk/channel/channel_chain.hpp"
 #include "tonewalk/channel/signal_search.hpp"
+#include "tonewalk/meter/compression_watch.hpp"
 #include "tonewalk/meter/line_meter.hpp"
 #include "tonewalk/meter/raw_watch.hpp"
 #include "tonewalk/pass/run_pass.hpp"
@@ -58,6 +59,13 @@ template <class Find>
 /// Throws stopped_early when a signal comes before there is anything to measure.
 [[nodiscard]] measurement open_measurement(const recording_options&, const signal_options&,
                                            const program&);
+
+/// A window long enough for the tone, for jobs whose windows nobody chooses.
+[[nodiscard]] record_grid usual_grid(const measurement&);
+
+/// Listens for a receiver that squeezes the tone; nothing without a tone.
+[[nodiscard]] std::unique_ptr<compression_watch> watch_compression(measurement&,
+                                                                   const record_grid&);
 
 /// Runs the pass; input that failed halfway gives a partial result. Throws stopped_early where a
 /// stop left nothing measured.

@@ -99,7 +99,7 @@ void note_skipped(level_log& log) {
     }
 }
 
-void note_suppressed(level_log& log) {
+void note_suppressed(level_log& log, const char* advice) {
     const std::size_t suppressed = flagged(log, flag_envelope_suppressed);
     if (suppressed > 0) {
         log.doubts.add(
@@ -107,30 +107,37 @@ void note_suppressed(level_log& log) {
              fmt::format("in {} of {} records noise makes an envelope read the tone 0.1 dB or "
                          "more low",
                          suppressed, log.records.size()),
-             "nulls look deeper than they are; use tone_dbfs, or --detector synchronous"});
+             advice});
     }
 }
 
 } // namespace
 
-void add_level_notes(level_log& log, quantity used, bool compressed) {
+void add_level_notes(level_log& log, quantity used, const level_note_options& o) {
     if (log.records.empty()) {
         return;
     }
     note_weak(log, flag_weak_carrier, note_code::weak_carrier, "carrier",
-              "bounds are given where it does not; a longer --window reaches lower");
+              o.heard ? "the audio there is mostly noise"
+                      : "bounds are given where it does not; a longer --window reaches lower");
     if (log.has_tone()) {
         note_weak(log, flag_weak_tone, note_code::weak_tone, "tone",
-                  "bounds are given where it does not; a longer --window reaches lower, or use "
-                  "--quantity carrier");
+                  o.heard ? "the audio there is mostly noise; a smaller --width lets less of it in"
+                          : "bounds are given where it does not; a longer --window reaches lower, "
+                            "or use --quantity carrier");
     }
-    note_limited(log, used == quantity::carrier ? flag_weak_carrier : flag_weak_tone);
+    if (!o.heard) {
+        note_limited(log, used == quantity::carrier ? flag_weak_carrier : flag_weak_tone);
+    }
     note_skipped(log);
-    note_suppressed(log);
+    note_suppressed(log, o.heard ? "the audio's nulls sound deeper than they are; use --detector "
+                                   "synchronous"
+                                 : "nulls look deeper than they are; use tone_dbfs, or --detector "
+                                   "synchronous");
     if (log.has_tone()) {
         note_depth_varies(log);
     }
-    log.doubts.merge(judge_gain_control(log, compressed).doubts);
+    log.doubts.merge(judge_gain_control(log, o.compressed).doubts);
 }
 
 } // namespace tonewalk

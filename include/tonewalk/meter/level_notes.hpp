@@ -8,7 +8,10 @@ namespace tonewalk {
 /// Doubts that the finished log itself raises: weak-carrier, weak-tone, floor-limited,
 /// segments-skipped, envelope-suppressed, depth-varies, gain-step, agc-suspected. Thresholds in
 /// docs/results.md.
-/// `compressed`: the receiver is known to squeeze strong signals (compression_watch.hpp).
-void add_level_notes(level_log&, quantity, bool compressed = false);
+struct level_note_options {
+    bool compressed = false; ///< the receiver is known to squeeze strong signals
+    bool heard = false;      ///< the log only goes with audio: no bounds are shown, no window chosen
+};
+void add_level_notes(level_log&, quantity, const level_note_options& = {});
 
 } // namespace tonewalk
