@@ -4,40 +4,16 @@
 #include <algorithm>
 #include <cmath>
 #include <memory>
-#include <optional>
 #include <span>
 
 #include <fmt/core.h>
 
-#include "tonewalk/base/decibel.hpp"
+#include "extremum_placer.hpp"
 #include "tonewalk/maths/distribution.hpp"
-#include "tonewalk/maths/parabola_fit.hpp"
 #include "tonewalk/maths/quantile.hpp"
-#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
-
-const double peak_reach = decibel::from_db(-1.0).power_ratio();
-const double null_reach = decibel::from_db(6.0).power_ratio();
-constexpr double least_null_windows = 6.0;
-constexpr std::size_t least_fit_records = 5;
-// Half a Hann window's mean square time is 0.0163 windows^2: a wave whose frequency is off the
-// curve by f loses (2 pi f T)^2 times this of its amplitude. Nearly doubled, since the curve bends
-// at nulls that lie further apart than its knots, and then stands outside the two waves'
-// frequencies.
-constexpr double hann_smear = 0.03;
-// A standing wave is a sine's square in power, not a parabola: fitted over a rise R of a whole
-// swing S, its vertex is off by R^2/(35 S) with even points, R^2/(20 S) at the most as records
-// fall.
-constexpr double parabola_error = 1.0 / 20.0;
-
-/// One record as the walk sees it; undetected records have amplitude 0.
-struct step {
-    const level_record* record = nullptr;
-    double amplitude = 0.0, power = 0.0, sigma = 0.0;
-    bool detected = false;
-};
 
 struct turn {
     std::size_t place = 0;
@@ -46,46 +22,26 @@ struct turn {
 
 class walk {
 public:
-    walk(std::vector<step> steps, double sigmas, const extrema_rule& rule, const level_log& log,
+    walk(std::vector<log_step> steps, double sigmas, double least_ratio, const level_log& log,
          quantity which)
         : steps_{std::move(steps)}, sigmas_{sigmas},
-          least_ratio_{rule.least_ratio}, window_s_{log.window_s},
-          overlap_{hann_overlap_inflation(log.every_s / log.window_s).amplitude}, which_{which} {
-        lowest_ = steps_.empty() ? 0.0 : steps_.front().amplitude;
-        for (const step& s : steps_) {
-            highest_ = std::max(highest_, s.amplitude);
-            lowest_ = std::min(lowest_, s.amplitude);
-        }
-    }
+          least_ratio_{least_ratio}, log_{log}, which_{which} {}
     [[nodiscard]] std::vector<extremum> extrema() const;
 
 private:
     [[nodiscard]] bool differ(std::size_t higher, std::size_t lower) const noexcept;
     [[nodiscard]] std::vector<turn> turns() const;
-    [[nodiscard]] extremum placed(const turn&) const;
-    [[nodiscard]] extremum placed_peak(std::size_t place) const;
-    [[nodiscard]] extremum placed_null(std::size_t place) const;
-    [[nodiscard]] std::pair<std::size_t, std::size_t> run_about(std::size_t place, double limit,
-                                                                bool above) const;
-    [[nodiscard]] std::optional<parabola_vertex> vertex(std::size_t first, std::size_t last) const;
-    void take_place(extremum&, const std::optional<parabola_vertex>&, std::size_t first,
-                    std::size_t last, std::size_t place) const;
-    [[nodiscard]] double width_s(std::size_t first, std::size_t last, double level) const;
     void set_prominence(std::vector<extremum>&, const std::vector<turn>&) const;
     [[nodiscard]] double shown_db(std::size_t place) const noexcept;
-    [[nodiscard]] std::size_t nearest_to(double time_s) const noexcept;
-    [[nodiscard]] double shape_error(const parabola_vertex&, std::size_t first,
-                                     std::size_t last) const noexcept;
 
-    std::vector<step> steps_;
-    double sigmas_, least_ratio_, window_s_;
-    double overlap_; // variance of a mean over that of as many independent records
-    double highest_ = 0.0, lowest_ = 0.0;
+    std::vector<log_step> steps_;
+    double sigmas_, least_ratio_;
+    const level_log& log_;
     quantity which_;
 };
 
 bool walk::differ(std::size_t higher, std::size_t lower) const noexcept {
-    const step &h = steps_[higher], &l = steps_[lower];
+    const log_step &h = steps_[higher], &l = steps_[lower];
     return h.amplitude - sigmas_ * h.sigma > l.amplitude + sigmas_ * l.sigma &&
            h.amplitude >= least_ratio_ * std::max(l.amplitude, l.sigma);
 }
@@ -120,190 +76,6 @@ std::vector<turn> walk::turns() const {
     return found;
 }
 
-/// The records about `place`, in a row, whose power stays above (or below) `limit`.
-std::pair<std::size_t, std::size_t> walk::run_about(std::size_t place, double limit,
-                                                    bool above) const {
-    const auto inside = [&](std::size_t k) {
-        return above ? steps_[k].power >= limit : steps_[k].power <= limit;
-    };
-    std::size_t first = place, last = place;
-    while (first > 0 && inside(first - 1)) {
-        --first;
-    }
-    while (last + 1 < steps_.size() && inside(last + 1)) {
-        ++last;
-    }
-    while (last - first + 1 < least_fit_records && (first > 0 || last + 1 < steps_.size())) {
-        first -= first > 0 ? 1U : 0U;
-        last += last + 1 < steps_.size() ? 1U : 0U;
-    }
-    return {first, last};
-}
-
-std::optional<parabola_vertex> walk::vertex(std::size_t first, std::size_t last) const {
-    std::vector<weighted_value> points;
-    for (std::size_t k = first; k <= last; ++k) {
-        const step& s = steps_[k];
-        const double variance = s.sigma * s.sigma;
-        const double power = std::max(0.0, s.power);
-        points.push_back({s.record->time_s, s.power,
-                          std::sqrt(4.0 * power * variance + 2.0 * variance * variance)});
-    }
-    // Weights from the points' own noisy powers would favour those that noise made small: use the
-    // fit's.
-    std::optional<parabola_vertex> fit = fit_parabola(points, overlap_);
-    for (int round = 0; fit && round < 2; ++round) {
-        for (std::size_t k = first; k <= last; ++k) {
-            weighted_value& p = points[k - first];
-            const double away = p.x - fit->x;
-            const double power = std::max(0.0, fit->y + 0.5 * fit->bend * away * away);
-            const double variance = steps_[k].sigma * steps_[k].sigma;
-            p.sigma = std::sqrt(4.0 * power * variance + 2.0 * variance * variance);
-        }
-        fit = fit_parabola(points, overlap_);
-    }
-    return fit;
-}
-
-void walk::take_place(extremum& e, const std::optional<parabola_vertex>& fit, std::size_t first,
-                      std::size_t last, std::size_t place) const {
-    const double from_s = steps_[first].record->time_s, until_s = steps_[last].record->time_s;
-    const bool right_way =
-        fit && (e.kind == extremum_kind::peak ? fit->bend < 0.0 : fit->bend > 0.0);
-    if (right_way && fit->x > from_s && fit->x < until_s) {
-        e.time_s = fit->x;
-        e.time_s_u95 = 1.96 * fit->x_sigma;
-    } else { // no parabola: anywhere among them
-        e.time_s = steps_[place].record->time_s;
-        e.time_s_u95 = std::max(e.time_s - from_s, until_s - e.time_s);
-    }
-}
-
-double amplitude_db(double power) {
-    return decibel::from_power_ratio(power).db();
-}
-
-/// Level and interval from a fitted power. `smear`: how far window and parabola may have moved its
-/// amplitude, relative.
-interval_estimate level_from(double power, double power_sigma, double smear) {
-    interval_estimate level;
-    const double reach = 1.96 * power_sigma + 2.0 * smear * std::max(0.0, power);
-    level.high95 = amplitude_db(std::max(power, 0.0) + reach);
-    if (power <= 0.0) {
-        return level;
-    }
-    level.value = amplitude_db(power);
-    level.low95 = power > reach ? amplitude_db(power - reach) : not_measured;
-    constexpr double symmetric_share = 0.36; // of the power: 15 dB line SNR
-    level.u95 = reach < symmetric_share * power ? 0.5 * (level.high95 - level.low95) : not_measured;
-    return level;
-}
-
-/// How far window and parabola may be off, relative in amplitude. Window: two waves A >= B against
-/// each other lie (2 f) apart in frequency, the curve somewhere between; each loses (2 f T)^2
-/// hann_smear at most. The parabola tells (2 f)^2 = bend / (2 A B), and the whole swing 4 A B.
-double walk::shape_error(const parabola_vertex& fit, std::size_t first,
-                         std::size_t last) const noexcept {
-    const double here = std::sqrt(std::max(fit.y, 0.0));
-    if (here <= 0.0) {
-        return 0.0;
-    }
-    const double swing = highest_ * highest_ - lowest_ * lowest_;
-    const double stronger = fit.bend > 0.0 ? 0.5 * (highest_ + here) : here;
-    const double window = swing > 0.0 ? hann_smear * window_s_ * window_s_ * 2.0 *
-                                            std::abs(fit.bend) / swing * stronger / here
-                                      : 0.0;
-    const double reach_s =
-        std::max(fit.x - steps_[first].record->time_s, steps_[last].record->time_s - fit.x);
-    const double rise = 0.5 * std::abs(fit.bend) * reach_s * reach_s;
-    return window + 0.5 * parabola_error * rise * rise / (std::max(rise, swing) * fit.y);
-}
-
-extremum walk::placed_peak(std::size_t place) const {
-    extremum e;
-    e.kind = extremum_kind::peak;
-    const auto [first, last] = run_about(place, peak_reach * steps_[place].power, true);
-    const auto fit = vertex(first, last);
-    take_place(e, fit, first, last, place);
-    const bool fitted = fit && fit->bend < 0.0 && fit->y > 0.0 && e.time_s == fit->x;
-    e.level_dbfs = fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, first, last))
-                          : level_of(*steps_[place].record, which_);
-    return e;
-}
-
-/// Time over which the power stays below `level`, between straight lines through the records.
-double walk::width_s(std::size_t first, std::size_t last, double level) const {
-    const auto crossing = [&](std::size_t inner, std::size_t outer) {
-        const step &a = steps_[inner], &b = steps_[outer];
-        const double share =
-            std::clamp((level - a.power) / std::max(b.power - a.power, 1e-300), 0.0, 1.0);
-        return a.record->time_s + share * (b.record->time_s - a.record->time_s);
-    };
-    std::size_t left = first, right = last;
-    while (left > 0 && steps_[left].power <= level) {
-        --left;
-    }
-    while (right + 1 < steps_.size() && steps_[right].power <= level) {
-        ++right;
-    }
-    const double from_s =
-        steps_[left].power > level ? crossing(left + 1, left) : steps_[left].record->time_s;
-    const double until_s =
-        steps_[right].power > level ? crossing(right - 1, right) : steps_[right].record->time_s;
-    return until_s - from_s;
-}
-
-extremum walk::placed_null(std::size_t place) const {
-    extremum e;
-    e.kind = extremum_kind::null;
-    std::size_t first = place, last = place;
-    while (last + 1 < steps_.size() && !steps_[place].detected && !steps_[last + 1].detected) {
-        ++last;
-    }
-    while (first > 0 && !steps_[place].detected && !steps_[first - 1].detected) {
-        --first;
-    }
-    e.floor_limited = !steps_[place].detected;
-    const std::size_t middle = (first + last) / 2;
-    const step& bottom = steps_[place];
-    const double bottom_power =
-        e.floor_limited
-            ? decibel::from_db(level_of(*steps_[middle].record, which_).high95).power_ratio()
-            : std::max(bottom.power, bottom.sigma * bottom.sigma);
-    const auto [from, until] = run_about(middle, null_reach * bottom_power, false);
-    const auto fit = vertex(from, until);
-    take_place(e, fit, from, until, middle);
-    const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x && !e.floor_limited;
-    const interval_estimate& nearest = level_of(*steps_[nearest_to(e.time_s)].record, which_);
-    e.level_dbfs =
-        fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, from, until)) : nearest;
-    e.floor_limited = e.floor_limited || std::isnan(e.level_dbfs.value);
-    const double fitted_bottom =
-        fitted ? std::max(fit->y, bottom.sigma * bottom.sigma) : bottom_power;
-    e.window_bound =
-        width_s(middle, middle, null_reach * fitted_bottom) < least_null_windows * window_s_;
-    if (e.window_bound) { // whichever of fit and record lets the null be less deep
-        e.floor_limited = true;
-        e.level_dbfs.high95 = std::fmax(e.level_dbfs.high95, nearest.high95);
-    }
-    if (e.floor_limited) {
-        e.level_dbfs.value = e.level_dbfs.low95 = e.level_dbfs.u95 = not_measured;
-    }
-    return e;
-}
-
-std::size_t walk::nearest_to(double time_s) const noexcept {
-    const auto apart = [time_s](const step& s) { return std::abs(s.record->time_s - time_s); };
-    const auto best =
-        std::min_element(steps_.begin(), steps_.end(),
-                         [&](const step& a, const step& b) { return apart(a) < apart(b); });
-    return static_cast<std::size_t>(best - steps_.begin());
-}
-
-extremum walk::placed(const turn& t) const {
-    return t.kind == extremum_kind::peak ? placed_peak(t.place) : placed_null(t.place);
-}
-
 double walk::shown_db(std::size_t place) const noexcept {
     const interval_estimate& level = level_of(*steps_[place].record, which_);
     return std::isnan(level.value) ? level.high95 : level.value;
@@ -335,16 +107,18 @@ void walk::set_prominence(std::vector<extremum>& all, const std::vector<turn>& a
 std::vector<extremum> walk::extrema() const {
     std::vector<extremum> all;
     const std::vector<turn> at = turns();
+    const extremum_placer placer{steps_, log_, which_};
     all.reserve(at.size());
     for (const turn& t : at) {
-        all.push_back(placed(t));
+        all.push_back(t.kind == extremum_kind::peak ? placer.peak_at(t.place)
+                                                    : placer.null_at(t.place));
     }
     set_prominence(all, at);
     return all;
 }
 
-std::vector<step> steps_of(std::span<const level_record> records, quantity which) {
-    std::vector<step> steps;
+std::vector<log_step> steps_of(std::span<const level_record> records, quantity which) {
+    std::vector<log_step> steps;
     for (const level_record& r : records) {
         const line_power& line = line_of(r, which);
         if (!std::isnan(line.power)) {
@@ -356,30 +130,40 @@ std::vector<step> steps_of(std::span<const level_record> records, quantity which
     // what the records usually have is the least.
     std::vector<double> sigmas;
     sigmas.reserve(steps.size());
-    for (const step& each : steps) {
+    for (const log_step& each : steps) {
         sigmas.push_back(each.sigma);
     }
     const double usual = median(std::move(sigmas));
-    for (step& each : steps) {
+    for (log_step& each : steps) {
         each.sigma = std::max(each.sigma, usual);
     }
     return steps;
 }
 
+/// What to type: two digits, rounded down.
+double window_to_type_ms(double longest_s) {
+    const double step_ms = std::pow(10.0, std::floor(std::log10(1000.0 * longest_s)) - 1.0);
+    return std::floor(1000.0 * longest_s / step_ms) * step_ms;
+}
+
 void note_window_bound(extrema_result& result, const level_log& log) {
     std::size_t bound = 0;
+    double narrowest_s = least_null_windows * log.window_s;
     for (const extremum& e : result.found) {
         bound += e.window_bound ? 1U : 0U;
+        narrowest_s = e.window_bound ? std::min(narrowest_s, e.width_s) : narrowest_s;
     }
     if (bound == 0) {
         return;
     }
+    const bool one = bound == 1;
     result.doubts.add(
         {note_code::window_bound, severity::warning,
-         fmt::format("{} nulls are narrower than {:.0f} windows of {:.3g} s: the window fills them",
-                     bound, least_null_windows, log.window_s),
-         fmt::format("their depth is a bound; give --window {:.3g}ms, or walk more slowly",
-                     1000.0 * log.window_s / least_null_windows)});
+         fmt::format("{} narrower than {:.0f} windows of {:.3g} s: the window fills {}",
+                     one ? "1 null is" : fmt::format("{} nulls are", bound), least_null_windows,
+                     log.window_s, one ? "it" : "them"),
+         fmt::format("{} depth is a bound; give --window {:g}ms, or walk more slowly",
+                     one ? "its" : "their", window_to_type_ms(narrowest_s / least_null_windows))});
 }
 
 } // namespace
@@ -394,7 +178,8 @@ extrema_result find_extrema(const level_log& log, quantity which, const extrema_
         while (past < all.size() && all[past].stretch == all[first].stretch) {
             ++past;
         }
-        const walk one{steps_of(all.subspan(first, past - first), which), sigmas, rule, log, which};
+        const walk one{steps_of(all.subspan(first, past - first), which), sigmas, rule.least_ratio,
+                       log, which};
         const std::vector<extremum> found = one.extrema();
         result.found.insert(result.found.end(), found.begin(), found.end());
         first = past;

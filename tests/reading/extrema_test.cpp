@@ -157,6 +157,37 @@ TEST(NullDepth, IsABoundWhereTheWindowFillsTheNull) {
     }
 }
 
+/// How long the field stays within 6 dB of its least value, from the waves themselves.
+double null_width_s(const two_waves& waves) {
+    const double middle = waves.nulls(0.0, waves.wavelength_s).front();
+    const double limit = std::pow(10.0, 6.0 / 20.0) * std::abs(waves(middle));
+    double half_s = 0.0;
+    while (std::abs(waves(middle + half_s)) < limit) {
+        half_s += 1e-5 * waves.wavelength_s;
+    }
+    return 2.0 * half_s;
+}
+
+TEST(NullDepth, AdvisesTheWindowThatTheNullsDemand) {
+    for (const double swr : {8.0, 30.0}) {
+        const two_waves waves{swr, 6.4, 0.9};
+        const double demanded_s = null_width_s(waves) / 6.0;
+        const am_signal s = walk_through(waves, 40.0, 0.2, 5);
+        const auto result_with = [&](double window_s) {
+            const level_log log =
+                measure(s, 40.0, {.every_s = window_s / 4.0, .window_s = window_s});
+            return find_extrema(log, quantity::carrier);
+        };
+        const extrema_result filled = result_with(0.2);
+        ASSERT_EQ(filled.doubts.all().size(), 1U);
+        const std::string advice = filled.doubts.all().front().advice;
+        const double advised_s = std::stod(advice.substr(advice.find("--window ") + 9)) / 1000.0;
+        EXPECT_LT(advised_s, 1.1 * demanded_s) << swr;
+        EXPECT_GT(advised_s, 0.75 * demanded_s) << swr;
+        EXPECT_FALSE(result_with(0.9 * advised_s).doubts.has(note_code::window_bound)) << swr;
+    }
+}
+
 TEST(Nulls, AreEachFoundOnceFromSwrTwoToFullyCrossed) {
     for (const double swr : {2.0, 10.0, 30.0, 1e9}) {
         const two_waves waves{swr, 12.0, 1.1};

@@ -19,8 +19,9 @@ struct extremum {
     interval_estimate level_dbfs; ///< floor-limited: value null, high95 its bound
     double prominence_db =
         0.0; ///< smaller difference to the neighbouring opposite extrema, or the log's ends
-    bool floor_limited = false; ///< noise or window set the depth
-    bool window_bound = false;  ///< narrower than 6 windows at 6 dB above its bottom
+    bool floor_limited = false;    ///< noise or window set the depth
+    double width_s = not_measured; ///< of a null, 6 dB above its bottom
+    bool window_bound = false;     ///< narrower there than 6 windows
 };
 
 struct extrema_result {
@@ -35,6 +36,6 @@ struct extrema_rule {
 /// Peaks and nulls of a level log (docs/measurements.md, "Extrema"): a walk with hysteresis in
 /// linear amplitude, each stretch anew; places from parabolas in power.
 [[nodiscard]] extrema_result find_extrema(const level_log&, quantity, const extrema_rule& = {});
-[[nodiscard]] sheet_table describe(const extrema_result&); ///< looks at the result
+[[nodiscard]] sheet_table describe(const extrema_result&); ///< outlives the result
 
 } // namespace tonewalk
