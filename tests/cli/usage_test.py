@@ -1,13 +1,10 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
-"""Exit statuses, one-line complaints, outputs that appear whole or not at all, and stopping."""
+"""Exit statuses, one-line complaints, outputs that appear whole or not at all."""
 import json
-import resource
-import signal
 import subprocess
-import time
 import unittest
 
-from program import PROGRAM, ProgramTest, am, notes, run, run_json, write_cf32
+from program import ProgramTest, am, run, write_cf32
 
 RATE = 48_000.0
 KNOWN = ("--format", "cf32_le", "--rate", "48k")
@@ -179,114 +176,6 @@ class Outputs(UsageTest):
         self.assertIn("narrow", loud.replace("instead of", "narrow"))
         self.assertNotIn("instead of", quiet)
         self.assertIn("no tone was found", quiet)
-
-    def test_a_closed_standard_output_is_quiet(self):
-        csv = self.folder / "a.csv"
-        for more in ([], ["--json", "-"]):
-            with self.subTest(more=more):
-                child = subprocess.Popen([PROGRAM, "levels", str(self.recording), *KNOWN, "--csv", str(csv),
-                                          "--force", "--centre", "145M", *more],
-                                         stdout=subprocess.PIPE, stderr=subprocess.PIPE)
-                child.stdout.close()
-                err = child.stderr.read().decode()
-                child.stderr.close()
-                self.assertEqual(child.wait(), 0, err)
-                self.assertNotIn("tonewalk:", err)
-                self.assertTrue(csv.read_text().startswith("time_s,"))
-
-    def test_a_full_disk_leaves_nothing(self):
-        def small_files():
-            resource.setrlimit(resource.RLIMIT_FSIZE, (4096, 4096))
-
-        for words in (["levels", "r.cf32", *KNOWN, "--json", "a.json"],
-                      ["levels", "r.cf32", *KNOWN, "--every", "10ms", "--csv", "a.csv"],
-                      ["hear", "r.cf32", *KNOWN, "-o", "a.wav"],
-                      ["make", "s.toml", "-o", "x"]):
-            with self.subTest(words=words):
-                self.complaint(4, *words, preexec_fn=small_files)
-                self.assertEqual(self.left_behind(), set())
-
-
-class Stopping(UsageTest):
-    def start(self, *words):
-        child = subprocess.Popen([PROGRAM, *map(str, words)], stdin=subprocess.PIPE, stdout=subprocess.PIPE,
-                                 stderr=subprocess.PIPE, cwd=self.folder)
-        self.addCleanup(child.stdin.close)
-        self.addCleanup(child.kill)
-        return child
-
-    def ended(self, child):
-        """Exit status and standard error, standard input left open."""
-        status = child.wait(timeout=20)
-        err = child.stderr.read().decode()
-        child.stdout.close()
-        child.stderr.close()
-        return status, err
-
-    def test_midway_on_a_pipe_the_result_so_far_is_written(self):
-        for number, status in ((signal.SIGINT, 130), (signal.SIGTERM, 143)):
-            with self.subTest(number=number):
-                child = self.start("levels", "-", *KNOWN, "--json", "a.json", "--csv", "a.csv", "--force")
-                child.stdin.write(self.recording.read_bytes())
-                child.stdin.flush()
-                time.sleep(1.0)
-                child.send_signal(number)
-                got, err = self.ended(child)
-                self.assertEqual(got, status, err)
-                result = json.loads((self.folder / "a.json").read_text())
-                self.assertTrue(result["recording"]["partial"])
-                self.assertIn("partial", notes(result))
-                self.assertGreater(result["recording"]["samples"], 0)
-                self.assertLessEqual(result["recording"]["samples"], 3 * RATE)
-                rows = (self.folder / "a.csv").read_text().splitlines()
-                self.assertEqual(len(rows) - 1, len(result["result"]["log"]["time_s"]))
-
-    def test_a_partial_result_is_that_of_the_recording_cut_there(self):
-        child = self.start("levels", "-", *KNOWN, "--json", "a.json")
-        child.stdin.write(self.recording.read_bytes())
-        child.stdin.flush()
-        time.sleep(1.0)
-        child.send_signal(signal.SIGINT)
-        self.assertEqual(self.ended(child)[0], 130)
-        partial = json.loads((self.folder / "a.json").read_text())
-        cut = self.folder / "cut.cf32"
-        cut.write_bytes(self.recording.read_bytes()[:8 * partial["recording"]["samples"]])
-        whole = run_json("levels", cut, *KNOWN)
-        for result in (partial, whole):
-            del result["command"], result["recording"]["name"], result["recording"]["partial"]
-            result["notes"] = [note for note in result["notes"] if note["code"] != "partial"]
-        self.assertEqual(partial, whole)
-
-    def test_an_idle_pipe_ends_at_once(self):
-        for number, status in ((signal.SIGINT, 130), (signal.SIGTERM, 143)):
-            with self.subTest(number=number):
-                child = self.start("levels", "-", *KNOWN, "--json", "idle.json")
-                time.sleep(0.5)
-                sent = time.monotonic()
-                child.send_signal(number)
-                got, err = self.ended(child)
-                self.assertLess(time.monotonic() - sent, 5.0)
-                self.assertEqual(got, status, err)
-                self.assertEqual(self.left_behind(), set())
-
-    def test_make_stops_and_leaves_nothing(self):
-        self.scene.write_text(SCENE.replace("duration_s = 1.5", "duration_s = 600.0"))
-        child = self.start("make", "s.toml", "-o", "x")
-        time.sleep(0.5)
-        child.send_signal(signal.SIGTERM)
-        self.assertEqual(self.ended(child)[0], 143)
-        self.assertEqual(self.left_behind(), set())
-
-    def test_hear_stopped_midway_writes_the_audio_so_far(self):
-        child = self.start("hear", "-", *KNOWN, "-o", "a.wav", "--json", "a.json")
-        child.stdin.write(self.recording.read_bytes())
-        child.stdin.flush()
-        time.sleep(1.0)
-        child.send_signal(signal.SIGTERM)
-        got, err = self.ended(child)
-        self.assertEqual(got, 143, err)
-        self.assertTrue(json.loads((self.folder / "a.json").read_text())["recording"]["partial"])
-        self.assertGreater((self.folder / "a.wav").stat().st_size, 1000)
 
 
 if __name__ == "__main__":
