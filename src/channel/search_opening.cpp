@@ -33,7 +33,8 @@ opening look_at_opening(block_source& source, const sample_converter& converter)
     const std::span<const std::byte> bytes = source.opening(wanted);
     const std::size_t frames = std::min(wanted, bytes.size() / facts.frame_bytes());
     if (frames == 0) {
-        throw error{fault::malformed, "holds no samples", facts.where(), "give a recording that does"};
+        throw error{fault::malformed, "holds no samples", facts.where(),
+                    "give a recording that does"};
     }
     return {{}, {bytes, frames, &facts, &converter, centre_shift(facts.stretches.front(), facts)}};
 }
