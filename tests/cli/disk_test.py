@@ -64,7 +64,8 @@ class FullDisk(ProgramTest):
     def test_the_audio_file_on_its_way_to_a_device(self):
         self.record(FULL // 4 - 8)
         (self.folder / "null.wav").symlink_to("/dev/null")
-        self.refused("hear", "r.ci8", *KNOWN, "-o", "null.wav", "--sample", "float", named="null.wav", whole=["null.wav"])
+        words = ("hear", "r.ci8", *KNOWN, "-o", "null.wav", "--sample", "float")
+        self.refused(*words, named="null.wav", whole=["null.wav"])
 
     def test_the_log(self):
         self.record(int(8 * RATE))
@@ -78,7 +79,8 @@ class FullDisk(ProgramTest):
         self.refused(*words, named="a.json", whole=["a.csv"])
         rows = (self.folder / "a.csv").read_text().splitlines()
         self.fits(*words, "--force")
-        self.assertEqual(len(rows) - 1, len(json.loads((self.folder / "a.json").read_text())["result"]["log"]["time_s"]))
+        log = json.loads((self.folder / "a.json").read_text())["result"]["log"]
+        self.assertEqual(len(rows) - 1, len(log["time_s"]))
 
     def test_made_samples(self):
         (self.folder / "s.toml").write_text(SCENE.format(format="cf32_le", seconds=3.0, every=0.1))

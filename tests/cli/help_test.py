@@ -7,7 +7,7 @@ import shlex
 import subprocess
 import unittest
 
-from program import PROGRAM, ProgramTest, run
+from program import ProgramTest, run
 from shells import Terminal, jobs, need, options
 
 DOCS = pathlib.Path(os.environ.get("TONEWALK_DOCS", pathlib.Path(__file__).parents[2] / "docs"))
@@ -65,7 +65,8 @@ class JobPages(unittest.TestCase):
         for job in jobs():
             section = (DOCS / "jobs" / f"{job}.md").read_text().split("\n## All options\n")[1].split("\n## ")[0]
             rows = re.findall(r"^\|([^|]*`-[^|]*)\|(.*)\|$", section, re.MULTILINE)
-            told = {name for names, meaning in rows if meaning.strip() for name in re.findall(r"`(--?[a-z][-a-z0-9]*)", names)}
+            told = {name for names, meaning in rows if meaning.strip()
+                    for name in re.findall(r"`(--?[a-z][-a-z0-9]*)", names)}
             self.assertEqual(set(options(job)) - told - {"-h", "--help"}, set(), job)
             self.assertEqual(told - set(options(job)), set(), job)
 
@@ -80,8 +81,8 @@ class ManualPage(unittest.TestCase):
 
     def test_it_renders_without_a_warning_and_has_the_usual_sections(self):
         sections = re.findall(r"^([A-Z][A-Z ]+)$", self.rendered(), re.MULTILINE)
-        self.assertEqual(sections, ["NAME", "SYNOPSIS", "DESCRIPTION", "OPTIONS", "JOBS", "SHARED OPTIONS", "EXIT STATUS",
-                                    "ENVIRONMENT", "EXAMPLES"])
+        self.assertEqual(sections, ["NAME", "SYNOPSIS", "DESCRIPTION", "OPTIONS", "JOBS", "SHARED OPTIONS",
+                                    "EXIT STATUS", "ENVIRONMENT", "EXAMPLES"])
 
     def test_every_job_and_option_stands_in_it(self):
         page = re.sub(r"\\f[BIR]", "", run("--man").out).replace("\\-", "-")

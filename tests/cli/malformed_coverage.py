@@ -2,8 +2,8 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """tests/cli/malformed_coverage.py BUILD: which check of the program each malformed case reaches.
 
-BUILD is a build made with the `coverage` preset. Each case of malformed_cases.CASES runs with counters of its own; told are
-the lines of the sources that it alone ran, or where none is its own the last ones that few others did. Fails where two
+BUILD is a build made with the `coverage` preset. Each case of malformed_cases.CASES runs with counters of its own; told is
+the line of the sources that it alone ran, or where none is its own one that as few others as any did. Fails where two
 cases ran exactly the same lines: one of them proves nothing that the other does not.
 """
 import collections
@@ -26,7 +26,7 @@ def lines_run(counters, build):
         if not beside.exists():
             beside.symlink_to(gcno)
         files.append(gcda)
-    done = subprocess.run(["gcov", "--json-format", "--stdout", *map(str, files)], cwd=build, capture_output=True, check=True)
+    done = subprocess.run(["gcov", "--json-format", "--stdout", *files], cwd=build, capture_output=True, check=True)
     run = set()
     for text in done.stdout.decode().splitlines():
         for source in json.loads(text)["files"]:

@@ -35,8 +35,9 @@ class Manners(ProgramTest):
 
     def typed(self, job, *more):
         """A command line of a job that succeeds in the test's folder."""
-        return {"make": ["make", "s.toml", "-o", "made", "--force"],
-                "hear": ["hear", "r.cf32", *KNOWN, "-o", "a.wav", "--force"]}.get(job, [job, "r.cf32", *KNOWN]) + [*more]
+        if job == "make":
+            return ["make", "s.toml", "-o", "made", "--force", *more]
+        return [job, "r.cf32", *KNOWN, *(["-o", "a.wav", "--force"] if job == "hear" else []), *more]
 
     def do(self, *words, status=0, **options):
         return run(*words, status=status, cwd=self.folder, **options)
@@ -154,7 +155,8 @@ class Targets(Manners):
     def test_standard_output_that_is_full(self):
         for words in (["--help"], ["--version"], ["--man"], ["--completion", "bash"], *map(self.typed, jobs())):
             with self.subTest(words=words), open("/dev/full", "wb") as full:
-                done = subprocess.run([PROGRAM, *words], stdout=full, stderr=subprocess.PIPE, cwd=self.folder, text=True)
+                done = subprocess.run([PROGRAM, *words], stdout=full, stderr=subprocess.PIPE, cwd=self.folder,
+                                      text=True)
                 self.assertEqual(done.returncode, 4, done.stderr)
                 self.assertIn("standard output: cannot be written", done.stderr)
 
@@ -164,8 +166,8 @@ class Targets(Manners):
         os.symlink("nowhere", self.folder / "dangling")
         (self.folder / "kept").write_text("mine")
         os.symlink("kept", self.folder / "to-kept")
-        for target, told in (("sub", "is a folder"), ("to-sub", "is a folder"), ("sub/", "is a folder"), (".", "is a folder"),
-                             ("no/a", "folder that does not exist; make the folder first"),
+        for target, told in (("sub", "is a folder"), ("to-sub", "is a folder"), ("sub/", "is a folder"),
+                             (".", "is a folder"), ("no/a", "folder that does not exist; make the folder first"),
                              ("kept/a", "folder"), ("kept", "--force"), ("to-kept", "--force"), ("dangling", "--force"),
                              ("x" * 300, "File name too long")):
             with self.subTest(target=target):
@@ -189,8 +191,8 @@ class Targets(Manners):
         probe = subprocess.run([PROGRAM, "--version"], preexec_fn=as_nobody, capture_output=True)
         if probe.returncode != 0:
             self.skipTest("another user cannot start the program here")
-        for words in (["levels", "r.cf32", *KNOWN, "--csv", "closed/a.csv"], ["hear", "r.cf32", *KNOWN, "-o", "closed/a.wav"],
-                      ["make", "s.toml", "-o", "closed/x"]):
+        for words in (["levels", "r.cf32", *KNOWN, "--csv", "closed/a.csv"],
+                      ["hear", "r.cf32", *KNOWN, "-o", "closed/a.wav"], ["make", "s.toml", "-o", "closed/x"]):
             with self.subTest(words=words):
                 line = self.complaint(4, *words, preexec_fn=as_nobody)
                 self.assertRegex(line, r"closed/.*Permission denied.*; choose a folder in which you may write")
@@ -203,7 +205,8 @@ class Targets(Manners):
             target.write_text("mine")
             plain = [word for word in words if word != "--force"]
             if plain[0] != "hear" or kind == "wav":
-                self.assertIn("exists already; choose another name or add --force", self.complaint(4, *plain, target.name))
+                self.assertIn("exists already; choose another name or add --force",
+                              self.complaint(4, *plain, target.name))
                 self.assertEqual(target.read_text(), "mine")
             self.do(*plain, target.name, "--force")
             self.assertTrue(self.whole(kind, target.read_bytes()))
@@ -224,18 +227,21 @@ class Streams(Manners):
     def test_a_reader_that_leaves_is_quiet(self):
         for words in (["--help"], ["--man"], ["--version", "--licences"], ["--completion", "zsh"],
                       *([job, "--help"] for job in jobs()), *map(self.typed, jobs()),
-                      self.typed("levels", "--every", "2ms", "--json", "-"), self.typed("levels", "--every", "2ms", "--csv", "-")):
+                      self.typed("levels", "--every", "2ms", "--json", "-"),
+                      self.typed("levels", "--every", "2ms", "--csv", "-")):
             for reader in ("head -1 >/dev/null", "true"):
                 with self.subTest(words=words, reader=reader):
-                    done = subprocess.run(["bash", "-c", f'"$0" "$@" | {reader}; exit "${{PIPESTATUS[0]}}"', PROGRAM, *words],
-                                          cwd=self.folder, capture_output=True, text=True)
+                    script = f'"$0" "$@" | {reader}; exit "${{PIPESTATUS[0]}}"'
+                    done = subprocess.run(["bash", "-c", script, PROGRAM, *words], cwd=self.folder,
+                                          capture_output=True, text=True)
                     self.assertEqual(done.returncode, 0, done.stderr)
                     self.assertNotIn("tonewalk:", done.stderr)
 
     def test_results_and_talk_do_not_mix(self):
-        for words in (self.typed("levels", "--json", "-"), self.typed("look", "--json", "-"), self.typed("hear", "--json", "-")):
-            json.loads(self.do(*words).out)
-        self.assertTrue(all(row.count(",") > 10 for row in self.do(*self.typed("levels", "--csv", "-")).out.splitlines()))
+        for job in ("levels", "look", "hear"):
+            json.loads(self.do(*self.typed(job, "--json", "-")).out)
+        rows = self.do(*self.typed("levels", "--csv", "-")).out.splitlines()
+        self.assertTrue(all(row.count(",") > 10 for row in rows))
 
     def test_quiet(self):
         for job in jobs():
@@ -283,7 +289,8 @@ class Progress(Manners):
         path = self.folder / "big.ci16"
         with open(path, "wb") as file:
             file.truncate(int(seconds) * 4 * 2_400_000)
-        return ("big.ci16", "--format", "ci16_le", "--rate", "2.4M", "--carrier", "+120k", "--tone", "1k", "--threads", "1")
+        return ("big.ci16", "--format", "ci16_le", "--rate", "2.4M", "--carrier", "+120k", "--tone", "1k",
+                "--threads", "1")
 
     def stopped(self, terminal, pattern):
         terminal.watch(pattern)
@@ -298,7 +305,8 @@ class Progress(Manners):
                 self.assertIn("\r\x1b[K", terminal.seen)  # wiped before the result
                 self.assertIn("stopped before the recording's end", " ".join(terminal.seen.split()))
         (self.folder / "s.toml").write_text(SCENE.replace("duration_s = 1.0", "duration_s = 3600.0"))
-        self.assertEqual(self.stopped(Terminal("make", "s.toml", "-o", "long", cwd=self.folder), r"\d+ %, .* left"), 130)
+        making = Terminal("make", "s.toml", "-o", "long", cwd=self.folder)
+        self.assertEqual(self.stopped(making, r"\d+ %, .* left"), 130)
 
     def slow_pipe(self):
         """The reading end of a pipe that brings 8 s of signal within 4 s."""
@@ -326,8 +334,8 @@ class Progress(Manners):
 
     def test_never_elsewhere_unless_asked(self):
         def piped(*more):
-            return subprocess.Popen([PROGRAM, "levels", "-", *KNOWN, *more], cwd=self.folder, text=True, stdin=self.slow_pipe(),
-                                    stdout=subprocess.DEVNULL, stderr=subprocess.PIPE)
+            return subprocess.Popen([PROGRAM, "levels", "-", *KNOWN, *more], cwd=self.folder, text=True,
+                                    stdin=self.slow_pipe(), stdout=subprocess.DEVNULL, stderr=subprocess.PIPE)
 
         plain, asked, asked_quiet = piped(), piped("--progress", "always"), piped("--progress", "always", "--quiet")
         on_terminal = [Terminal("levels", "-", *KNOWN, *more, stdin=self.slow_pipe(), cwd=self.folder)
@@ -363,8 +371,9 @@ class Locales(Manners):
     def outputs(self, environment):
         for name in ("out.csv", "out.json", "out.wav", "made.truth.json", "made.sigmf-meta", "made.sigmf-data"):
             (self.folder / name).unlink(missing_ok=True)
-        environment = {**{key: value for key, value in os.environ.items() if key not in ("LANG", "TZ") and key[:3] != "LC_"},
-                       **environment}
+        plain = {key: value for key, value in os.environ.items()
+                 if key not in ("LANG", "LANGUAGE", "TZ") and key[:3] != "LC_"}
+        environment = {**plain, **environment}
         texts = [self.do(*words, env=environment, status=None) for words in
                  (self.typed("levels", "--start-utc", "2026-03-29T01:30:00Z", "--csv", "out.csv", "--json", "out.json"),
                   ["hear", "r.cf32", *KNOWN, "-o", "out.wav", "--gain", "1.5"], self.typed("look"), self.typed("make"),
@@ -379,8 +388,9 @@ class Locales(Manners):
                                env={**os.environ, "LOCPATH": str(folder), "LC_ALL": "de_DE.UTF-8"})
         self.assertEqual(works.stdout, ",\n")  # else the test would prove nothing
         reference = self.outputs({"LC_ALL": "C", "TZ": "UTC"})
-        for environment in ({"LC_ALL": "POSIX"}, {}, *({"LC_ALL": name, "LOCPATH": str(folder)} for name in self.NAMES),
-                            {"LC_ALL": "no_SUCH.locale"}, {"TZ": "Asia/Kolkata"}, {"TZ": "America/St_Johns"}, {"TZ": "nonsense"}):
+        locales = [{"LC_ALL": name, "LOCPATH": str(folder)} for name in self.NAMES]
+        zones = [{"TZ": zone} for zone in ("Asia/Kolkata", "America/St_Johns", "nonsense")]
+        for environment in ({"LC_ALL": "POSIX"}, {}, *locales, {"LC_ALL": "no_SUCH.locale"}, *zones):
             with self.subTest(environment=environment):
                 self.assertEqual(self.outputs(environment), reference)
 
@@ -390,15 +400,16 @@ class Names(Manners):
         odd = os.fsencode(self.folder) + b"/r\xff\xfe.cf32"
         shutil.copyfile(os.fsencode(self.recording), odd)
         target = os.fsencode(self.folder) + b"/o\xe9.json"
-        done = subprocess.run([PROGRAM, b"levels", odd, *map(str.encode, KNOWN), b"--json", target], capture_output=True)
+        known = [*map(str.encode, KNOWN)]
+        done = subprocess.run([PROGRAM, b"levels", odd, *known, b"--json", target], capture_output=True)
         self.assertEqual(done.returncode, 0, done.stderr)
         with open(target, "rb") as file:
             result = json.loads(file.read().decode("utf-8"))
         self.assertIn("\ufffd", result["recording"]["name"])
         done.stdout.decode("utf-8")
-        for words in ([b"levels", odd + b"x", *map(str.encode, KNOWN)], [b"levels", odd], [b"make", odd, b"-o", b"x"],
-                      [b"l\xffvels"], [b"levels", b"--csv\xff"], [b"levels", odd, *map(str.encode, KNOWN), b"--tone", b"\xff"],
-                      [b"levels", odd, *map(str.encode, KNOWN), b"--json", target]):
+        for words in ([b"levels", odd + b"x", *known], [b"levels", odd], [b"make", odd, b"-o", b"x"],
+                      [b"l\xffvels"], [b"levels", b"--csv\xff"], [b"levels", odd, *known, b"--tone", b"\xff"],
+                      [b"levels", odd, *known, b"--json", target]):
             with self.subTest(words=words):
                 done = subprocess.run([PROGRAM, *words], capture_output=True, cwd=self.folder)
                 self.assertIn(done.returncode, (2, 3, 4))

@@ -171,7 +171,8 @@ class LongRecordings(Stopping):
         noise = numpy.random.Generator(numpy.random.PCG64(18082026)).normal(0.0, 3e-3, (t.size, 2))
         fade = 10.0 ** ((-20.0 - 6.0 * numpy.cos(numpy.pi * t)) / 20.0)  # whole turns in a block: no seam
         z = fade * (1.0 + 0.5 * numpy.cos(2e3 * numpy.pi * t)) * numpy.exp(2j * numpy.pi * 3e5 * t)
-        block = numpy.rint(32767.0 * numpy.stack([z.real + noise[:, 0], z.imag + noise[:, 1]], 1)).astype("<i2").tobytes()
+        codes = numpy.rint(32767.0 * (numpy.stack([z.real, z.imag], 1) + noise))
+        block = codes.astype("<i2").tobytes()
         path = self.folder / "big.ci16"
         with open(path, "wb") as file:
             for _ in range(blocks):
@@ -204,7 +205,8 @@ class LongRecordings(Stopping):
                 if time_s < until_s:
                     compared += 1
                     self.assertEqual(time_s, whole["time_s"][k])
-                    self.assertLessEqual(abs(part[key][k] - whole[key][k]), 0.01 * whole[key + "_u95"][k], (key, time_s))
+                    apart = abs(part[key][k] - whole[key][k])
+                    self.assertLessEqual(apart, 0.01 * whole[key + "_u95"][k], (key, time_s))
         self.assertGreater(compared, 100)
 
     def endless(self):
@@ -220,8 +222,8 @@ class LongRecordings(Stopping):
     def test_a_check_of_the_hash_ends_at_once(self):
         with open(self.folder / "big.ci16", "wb") as file:
             file.truncate(40 << 30)
-        child = self.start("levels", "big.ci16", "--format", "ci16_le", "--rate", "2.4M", "--verify", "--json", "a.json",
-                           stdin=subprocess.DEVNULL)
+        child = self.start("levels", "big.ci16", "--format", "ci16_le", "--rate", "2.4M", "--verify",
+                           "--json", "a.json", stdin=subprocess.DEVNULL)
         time.sleep(0.5)
         out, err = self.stop(child)
         self.assertEqual((out, err), ("", STOPPED))
@@ -270,7 +272,8 @@ class WhileWriting(Stopping):
     def test_an_output_that_waits_for_its_reader_ends_at_the_first_signal(self):
         os.mkfifo(self.folder / "fifo")
         os.mkfifo(self.folder / "fifo.wav")
-        for words in (["levels", "r.cf32", *KNOWN, "--json", "a.json", "--csv", "fifo"], ["hear", "r.cf32", *KNOWN, "-o", "fifo.wav"]):
+        for words in (["levels", "r.cf32", *KNOWN, "--json", "a.json", "--csv", "fifo"],
+                      ["hear", "r.cf32", *KNOWN, "-o", "fifo.wav"]):
             with self.subTest(words=words):
                 child = self.start(*words, stdin=subprocess.DEVNULL)
                 self.settle(child)
@@ -284,8 +287,8 @@ class Twice(Stopping):
         with open(self.folder / "big", "wb") as file:
             file.truncate(30 << 30)
         big = ("big", "--format", "ci16_le", "--rate", "2.4M", "--carrier", "+120k", "--tone", "1k")
-        for words in (["levels", *big, "--json", "a.json", "--csv", "a.csv"], ["hear", *big, "-o", "a.wav", "--json", "a.json"],
-                      ["make", "s.toml", "-o", "made"]):
+        for words in (["levels", *big, "--json", "a.json", "--csv", "a.csv"],
+                      ["hear", *big, "-o", "a.wav", "--json", "a.json"], ["make", "s.toml", "-o", "made"]):
             with self.subTest(words=words):
                 child = self.start(*words, stdin=subprocess.DEVNULL)
                 time.sleep(1.0)
