@@ -12,7 +12,6 @@ namespace tonewalk {
 namespace {
 
 constexpr std::size_t most_noise_run = 256;
-constexpr std::size_t lobe_bins = 4;
 constexpr double least_power = 1e-30; // of a noise bin: keeps silence from dividing by zero
 
 double median_of_three(double a, double b, double c) {

@@ -12,6 +12,8 @@
 
 namespace tonewalk {
 
+/// Bins on either side of a line's own that its main lobe covers.
+inline constexpr std::size_t lobe_bins = 4;
 /// A line counts from 12 dB over the noise beside it.
 inline const double line_ratio = decibel::from_db(12.0).power_ratio();
 /// Two lines mirror each other when their powers differ by 12 dB at most.

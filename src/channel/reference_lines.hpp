@@ -7,9 +7,6 @@
 
 namespace tonewalk {
 
-/// Bins on either side of a line's own that its main lobe covers.
-inline constexpr std::size_t lobe_bins = 4;
-
 /// Which lines of a survey have a mirror place about 0 Hz that shows their image and nothing else:
 /// 8 bins or more from 0 Hz and the band's edges, 20 dB over the noise at the mirror place, 10 dB
 /// over what stands there, which is neither another line's lobe nor a sideband.

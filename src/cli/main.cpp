@@ -102,7 +102,7 @@ void print_help(const CLI::App& app) {
     print_out(found == tree.jobs.end() ? help_text(tree, columns) : help_text(*found, columns));
 }
 
-int run(int argc, char** argv) {
+int run_program(int argc, char** argv) {
     keep_standard_descriptors();
     const stop_watch stopping;
     CLI::App app{"Measurements on recordings of amplitude-modulated transmitters.", "tonewalk"};
@@ -143,7 +143,7 @@ int run(int argc, char** argv) {
 int main(int argc, char** argv) {
     using namespace tonewalk;
     try {
-        return cli::run(argc, argv);
+        return cli::run_program(argc, argv);
     } catch (const error& problem) {
         cli::complain(problem.what());
         return problem.exit_status();

@@ -8,12 +8,11 @@
 
 #include "tonewalk/base/decibel.hpp"
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
-
-constexpr double two_sided = 1.96;
 
 /// Mean power over the records and its standard error from their scatter, neighbours overlapping.
 background_line mean_line(const level_log& log, quantity which, double overlap) {
@@ -34,8 +33,8 @@ background_line mean_line(const level_log& log, quantity which, double overlap) 
     const double mean = sum / n;
     const double scatter = n > 1.0 ? std::sqrt(std::max(0.0, squares / n - mean * mean)) : 0.0;
     const double error = std::max(scatter, noise / n) * std::sqrt(overlap / n);
-    const bool stands_out = mean > two_sided * error;
-    return {stands_out ? mean : 0.0, std::sqrt(std::max(0.0, mean) + two_sided * error)};
+    const bool stands_out = mean > two_sided_95 * error;
+    return {stands_out ? mean : 0.0, std::sqrt(std::max(0.0, mean) + two_sided_95 * error)};
 }
 
 void add_line(sheet& s, const char* key, const background_line& line) {

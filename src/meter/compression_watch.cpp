@@ -11,6 +11,7 @@
 #include "am_lines.hpp"
 #include "product_growth.hpp"
 #include "stretch_samples.hpp"
+#include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/quantile.hpp"
 #include "tonewalk/maths/window.hpp"
 
@@ -19,8 +20,8 @@ namespace {
 
 constexpr double least_periods = 10.0;     // of the tone in a record: its lines stand apart
 constexpr double least_tone_ratio = 100.0; // of the tone's power over its noise
-constexpr std::size_t least_records = 20;
-constexpr double least_range_db = 3.0;
+constexpr std::size_t least_strong_records = 20;
+constexpr double least_level_range_db = 3.0;
 constexpr double significant_sigmas = 5.0;
 constexpr double least_compression_db = 0.05;
 constexpr double visible_compression_db = 0.5; // what a judgement has to be able to see
@@ -180,12 +181,12 @@ compression_result compression_watch::result() const {
     }
     const double noise = s.records.empty() ? 0.0 : median_noise(s.records);
     const std::vector<modulation_lines> strong = strong_ones(s.records, noise);
-    if (strong.size() < least_records) {
+    if (strong.size() < least_strong_records) {
         r.evidence = "the tone stands 20 dB out of the noise in too few records";
         return r;
     }
     r.level_range_db = level_range_db(strong);
-    if (r.level_range_db < least_range_db) {
+    if (r.level_range_db < least_level_range_db) {
         r.evidence = fmt::format("the carrier's level moves by {:.1f} dB only: receiver and "
                                  "transmitter cannot be told apart",
                                  r.level_range_db);
@@ -195,7 +196,7 @@ compression_result compression_watch::result() const {
     const with_error& bend = growth.from_products;
     r.compression_db.value = crest_loss_db(strong, growth);
     const double error_db = std::abs(r.compression_db.value / bend.value) * bend.error;
-    r.compression_db.u95 = 1.96 * error_db;
+    r.compression_db.u95 = two_sided_95 * error_db;
     const bool significant = bend.value < -significant_sigmas * bend.error &&
                              r.compression_db.value >= least_compression_db;
     r.judged = significant || significant_sigmas * error_db <= visible_compression_db;

@@ -6,6 +6,7 @@
 
 #include "line_moments.hpp"
 #include "tonewalk/base/decibel.hpp"
+#include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/meter/envelope_suppression.hpp"
 
 namespace tonewalk {
@@ -80,7 +81,7 @@ void level_intervals::correct_incidental_phase(level_log& log) {
         return;
     }
     const double share = std::max(0.0, across / in_phase);
-    const double share_u95 = 1.96 * std::sqrt(across_variance) / in_phase;
+    const double share_u95 = two_sided_95 * std::sqrt(across_variance) / in_phase;
     incidental_bound_ = share_u95 / 2.0; // of an amplitude
     for (std::size_t k = 0; k < log.records.size(); ++k) {
         if (!basis_[k].split) {

@@ -8,12 +8,12 @@
 
 #include "tonewalk/base/decibel.hpp"
 #include "tonewalk/base/error.hpp"
+#include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
 
-constexpr double two_sided = 1.96;
 const double db_per_relative_power = 10.0 / std::log(10.0);
 
 estimate level_at(const level_log& log, const reference_span& span) {
@@ -38,7 +38,7 @@ estimate level_at(const level_log& log, const reference_span& span) {
     const double spread = hann_overlap_inflation(log.every_s / log.window_s).amplitude;
     const double error_of_mean = std::sqrt(variance / n * spread) / mean;
     return {decibel::from_power_ratio(mean).db(),
-            two_sided * db_per_relative_power * error_of_mean};
+            two_sided_95 * db_per_relative_power * error_of_mean};
 }
 
 void lower(interval_estimate& level, double by_db, double more_u95_db) {

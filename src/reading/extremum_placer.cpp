@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "tonewalk/base/decibel.hpp"
+#include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
@@ -31,7 +32,7 @@ double amplitude_db(double power) {
 /// amplitude, relative.
 interval_estimate level_from(double power, double power_sigma, double smear) {
     interval_estimate level;
-    const double reach = 1.96 * power_sigma + 2.0 * smear * std::max(0.0, power);
+    const double reach = two_sided_95 * power_sigma + 2.0 * smear * std::max(0.0, power);
     level.high95 = amplitude_db(std::max(power, 0.0) + reach);
     if (power <= 0.0) {
         return level;
@@ -121,7 +122,7 @@ void extremum_placer::take_time(extremum& e, const std::optional<parabola_vertex
         fit && (e.kind == extremum_kind::peak ? fit->bend < 0.0 : fit->bend > 0.0);
     if (right_way && fit->x > from_s && fit->x < until_s) {
         e.time_s = fit->x;
-        e.time_s_u95 = 1.96 * fit->x_sigma;
+        e.time_s_u95 = two_sided_95 * fit->x_sigma;
     } else { // no parabola: anywhere among them
         e.time_s = steps_[place].record->time_s;
         e.time_s_u95 = std::max(e.time_s - from_s, until_s - e.time_s);

@@ -3,6 +3,9 @@
 
 namespace tonewalk {
 
+/// Standard errors on either side of a normal 95 % interval.
+inline constexpr double two_sided_95 = 1.96;
+
 /// Quantiles and distribution functions; p is the probability below, 0 < p < 1.
 [[nodiscard]] double normal_quantile(double p);
 [[nodiscard]] double student_t_quantile(double p, double degrees);
