@@ -164,8 +164,8 @@ std::optional<close_look::pair> close_look::pair_at(std::size_t upper_bin, doubl
 /// Lines that mirror each other about the carrier, strongest first.
 std::vector<close_look::pair> close_look::pairs(double carrier_hz, double carrier_power,
                                                 double low_hz, double high_hz) const {
-    constexpr double lobe_bins = 5.0; // no line is told from the carrier's own inside it
-    const double least_hz = std::max(low_hz, lobe_bins * spectrum_->bin_hz());
+    constexpr double least_bins = 5.0; // no line is told from the carrier's own inside it
+    const double least_hz = std::max(low_hz, least_bins * spectrum_->bin_hz());
     const std::size_t first = spectrum_->bin_of(carrier_hz + least_hz),
                       last = spectrum_->bin_of(carrier_hz + high_hz);
     std::vector<pair> found;
