@@ -23,7 +23,7 @@ class Outcome:
         out, err = folder.parent / (folder.name + ".out"), folder.parent / (folder.name + ".err")
         begin = time.monotonic()
         with open(out, "wb") as stdout, open(err, "wb") as stderr:
-            child = subprocess.Popen([PROGRAM, *case.words], cwd=folder, stdout=stdout, stderr=stderr,
+            child = subprocess.Popen([PROGRAM, *case.words.split()], cwd=folder, stdout=stdout, stderr=stderr,
                                      stdin=subprocess.DEVNULL if case.feed is None else subprocess.PIPE,
                                      env={**os.environ, **(environment or {})})
             if case.feed is not None:
