@@ -12,6 +12,9 @@ if(TONEWALK_DEVELOPER_MODE)
   if(NOT CMAKE_CXX_FLAGS MATCHES "-fsanitize") # whose instrumentation makes GCC warn of what is not there
     target_compile_options(tonewalk_options INTERFACE -Werror)
   endif()
+  if(CMAKE_UNITY_BUILD) # a file's own names are no secret from the ones behind it
+    target_compile_options(tonewalk_options INTERFACE -Wno-shadow)
+  endif()
 endif()
 
 set_property(GLOBAL PROPERTY tonewalk_rooms "")
@@ -55,27 +58,29 @@ function(tonewalk_link_rooms target)
   target_link_libraries(${target} PRIVATE tonewalk_options)
 endfunction()
 
-# tonewalk_room_tests(NAME [ROOMS room...]): one executable of every *_test.cpp in tests/NAME.
-# The start of a suite's name is its label: Outside*, Coverage*, Slow*, Malformed*, Golden*; else unit.
-function(tonewalk_room_tests name)
-  cmake_parse_arguments(arg "" "" "ROOMS" ${ARGN})
-  file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${name}/*_test.cpp
-       ${CMAKE_CURRENT_SOURCE_DIR}/${name}/*_twin.cpp)
-  if(NOT sources)
-    return()
-  endif()
-  add_executable(tonewalk_${name}_tests ${sources})
-  set_target_properties(tonewalk_${name}_tests PROPERTIES
-    RUNTIME_OUTPUT_DIRECTORY ${PROJECT_BINARY_DIR}/tests)
-  tonewalk_link_rooms(tonewalk_${name}_tests ${name} ${arg_ROOMS})
-  target_include_directories(tonewalk_${name}_tests PRIVATE ${PROJECT_SOURCE_DIR}/tests)
-  target_compile_definitions(tonewalk_${name}_tests PRIVATE
+# What every test program has. GoogleTest's header is compiled once for all of them.
+if(TONEWALK_DEVELOPER_MODE)
+  include(GoogleTest)
+  file(CONFIGURE OUTPUT ${PROJECT_BINARY_DIR}/gtest_header.cpp CONTENT "// the header alone\n")
+  add_library(tonewalk_gtest OBJECT ${PROJECT_BINARY_DIR}/gtest_header.cpp)
+  target_link_libraries(tonewalk_gtest PUBLIC tonewalk_options GTest::gtest_main)
+  target_include_directories(tonewalk_gtest PUBLIC ${PROJECT_SOURCE_DIR}/tests)
+  target_compile_definitions(tonewalk_gtest PUBLIC
     TONEWALK_TEST_DATA="${PROJECT_SOURCE_DIR}/tests/data"
     TONEWALK_TEST_PYTHON="/usr/bin/python3"
     TONEWALK_TEST_SUPPORT="${PROJECT_SOURCE_DIR}/tests/support")
-  target_link_libraries(tonewalk_${name}_tests PRIVATE GTest::gtest_main)
-  target_precompile_headers(tonewalk_${name}_tests PRIVATE <gtest/gtest.h>)
-  include(GoogleTest)
+  target_precompile_headers(tonewalk_gtest PRIVATE <gtest/gtest.h>)
+endif()
+
+# tonewalk_test_program(NAME source...): an executable of tests. The start of a suite's name is its label:
+# Outside*, Coverage*, Slow*, Malformed*, Golden*; else unit.
+function(tonewalk_test_program name)
+  add_executable(tonewalk_${name}_tests ${ARGN})
+  set_target_properties(tonewalk_${name}_tests PROPERTIES
+    UNITY_BUILD OFF  # each test file has names of its own
+    RUNTIME_OUTPUT_DIRECTORY ${PROJECT_BINARY_DIR}/tests)
+  target_link_libraries(tonewalk_${name}_tests PRIVATE tonewalk_gtest)
+  target_precompile_headers(tonewalk_${name}_tests REUSE_FROM tonewalk_gtest)
   set(special Outside Coverage Slow Malformed Golden)
   list(JOIN special "*:" others)
   gtest_discover_tests(tonewalk_${name}_tests TEST_PREFIX "${name}." TEST_FILTER "-${others}*"
@@ -85,4 +90,12 @@ function(tonewalk_room_tests name)
     gtest_discover_tests(tonewalk_${name}_tests TEST_PREFIX "${name}." TEST_FILTER "${kind}*"
       DISCOVERY_TIMEOUT 60 TEST_LIST ${name}_${label} PROPERTIES LABELS ${label} TIMEOUT 1800)
   endforeach()
+endfunction()
+
+# tonewalk_room_tests(NAME [ROOMS room...]): one program of every *_test.cpp in tests/NAME.
+function(tonewalk_room_tests name)
+  cmake_parse_arguments(arg "" "" "ROOMS" ${ARGN})
+  file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${name}/*_test.cpp)
+  tonewalk_test_program(${name} ${sources})
+  tonewalk_link_rooms(tonewalk_${name}_tests ${name} ${arg_ROOMS})
 endfunction()
