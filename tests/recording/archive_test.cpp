@@ -138,7 +138,7 @@ pack('meta-link.sigmf', [('x.sigmf-meta', (tarfile.SYMTYPE, 'y')), ('x.sigmf-dat
                            row{"climbing-inside.sigmf", "leads out of the archive"},
                            row{"symlink.sigmf", "\"x.sigmf-data\": is a link"},
                            row{"hardlink.sigmf", "\"x.sigmf-data\": is a link"},
-                           row{"folder.sigmf", "is missing"}, row{"device.sigmf", "is no file"},
+                           row{"folder.sigmf", "has no file"}, row{"device.sigmf", "is no file"},
                            row{"meta-link.sigmf", "\"x.sigmf-meta\": is a link"}}) {
         const auto failure = error_of_opening(request_for(folder, row.name));
         EXPECT_EQ(failure.exit_status, 3) << failure.line;
@@ -184,7 +184,7 @@ os.mkdir('folder.sigmf')
     for (const row& row :
          {row{"empty.sigmf", "empty.sigmf"}, row{"zeros.sigmf", "no recording"},
           row{"noise.sigmf", "is no whole tar archive"}, row{"nothing.sigmf", "holds no recording"},
-          row{"no-data.sigmf", "\"x.sigmf-data\" is missing"},
+          row{"no-data.sigmf", "has no file \"x.sigmf-data\""},
           row{"twice.sigmf", "\"x.sigmf-meta\" twice"},
           row{"twice-data.sigmf", "\"x.sigmf-data\" twice"},
           row{"bad-meta.sigmf", "member \"x.sigmf-meta\", byte"},

@@ -65,11 +65,12 @@ void expect_refused(const wrong_metadata& row) {
 }
 
 TEST(MalformedMetadata, TextThatIsNoJsonNamesTheByte) {
-    for (const std::string text : {"", "{", "[1, 2", "\xFF\xFE{}", "{\"global\": {\"a\": \x01}}",
+    for (const std::string text : {"", "{", "[1, 2", "\x80{}", "{\"global\": {\"a\": \x01}}",
                                    "not json", "{\"a\": 1} trailing", "{\"a\": \"\xE9\"}"})
         expect_refused({text, "byte ", "is no valid JSON"});
     expect_refused({R"({"a": 1e999})", "", "beyond all range"});
     expect_refused({std::string(100000, '['), "byte ", "is no valid JSON"});
+    expect_refused({"\xFF\xFE{", "bad.sigmf-meta", "UTF-16"});
 }
 
 TEST(MalformedMetadata, DeepNestingIsRefusedOrReadWithoutExhaustingTheStack) {
