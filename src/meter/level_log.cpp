@@ -185,6 +185,10 @@ interval_estimate with_common_doubts(const interval_estimate& level, const level
         return amplitude > 0.0 ? decibel::from_amplitude_ratio(amplitude).db() : not_measured;
     };
     interval_estimate r = level;
+    if (std::isnan(level.value)) {
+        r.high95 = moved(level.high95, 1.0) + log.common_u95_db;
+        return r;
+    }
     r.low95 = level.value - std::hypot(level.value - moved(level.low95, -1.0), log.common_u95_db);
     r.high95 = level.value + std::hypot(moved(level.high95, 1.0) - level.value, log.common_u95_db);
     r.u95 = std::isnan(level.u95) ? not_measured : 0.5 * (r.high95 - r.low95);

@@ -48,7 +48,7 @@ interval_estimate level_from(double power, double power_sigma, double smear) {
 
 extremum_placer::extremum_placer(std::span<const log_step> steps, const level_log& log,
                                  quantity which)
-    : steps_{steps}, window_s_{log.window_s},
+    : steps_{steps}, log_{&log}, window_s_{log.window_s},
       overlap_{hann_overlap_inflation(log.every_s / log.window_s).amplitude}, which_{which} {
     double lowest = steps_.empty() ? 0.0 : steps_.front().amplitude;
     for (const log_step& s : steps_) {
@@ -178,6 +178,12 @@ const interval_estimate& extremum_placer::level_near(double time_s) const noexce
     return level_of(*best->record, which_);
 }
 
+interval_estimate extremum_placer::level_of_fit(const parabola_vertex& fit, std::size_t first,
+                                                std::size_t last) const {
+    return with_common_doubts(level_from(fit.y, fit.y_sigma, shape_error(fit, first, last)), *log_,
+                              which_);
+}
+
 extremum extremum_placer::peak_at(std::size_t place) const {
     extremum e;
     e.kind = extremum_kind::peak;
@@ -185,8 +191,8 @@ extremum extremum_placer::peak_at(std::size_t place) const {
     const auto fit = vertex(first, last);
     take_time(e, fit, first, last, place);
     const bool fitted = fit && fit->bend < 0.0 && fit->y > 0.0 && e.time_s == fit->x;
-    e.level_dbfs = fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, first, last))
-                          : level_of(*steps_[place].record, which_);
+    e.level_dbfs =
+        fitted ? level_of_fit(*fit, first, last) : level_of(*steps_[place].record, which_);
     return e;
 }
 
@@ -206,8 +212,7 @@ extremum extremum_placer::null_at(std::size_t place) const {
     take_time(e, fit, from, until, middle);
     const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x && !e.floor_limited;
     const interval_estimate& nearest = level_near(e.time_s);
-    e.level_dbfs =
-        fitted ? level_from(fit->y, fit->y_sigma, shape_error(*fit, from, until)) : nearest;
+    e.level_dbfs = fitted ? level_of_fit(*fit, from, until) : nearest;
     const double fitted_bottom =
         fitted ? std::max(fit->y, bottom.sigma * bottom.sigma) : bottom_power;
     e.width_s = width_s(middle, null_reach * fitted_bottom);

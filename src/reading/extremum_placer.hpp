@@ -36,10 +36,13 @@ private:
                                      std::size_t last) const noexcept;
     [[nodiscard]] double width_s(std::size_t place, double level) const;
     [[nodiscard]] const interval_estimate& level_near(double time_s) const noexcept;
+    [[nodiscard]] interval_estimate level_of_fit(const parabola_vertex&, std::size_t first,
+                                                 std::size_t last) const;
     void take_time(extremum&, const std::optional<parabola_vertex>&, std::size_t first,
                    std::size_t last, std::size_t place) const;
 
     std::span<const log_step> steps_;
+    const level_log* log_;
     double window_s_;
     double overlap_;     // variance of a mean over that of as many independent records
     double swing_ = 0.0; // of power, highest to lowest

@@ -293,5 +293,36 @@ TEST(WrongMeters, RetuningEachRecordFillsNulls) {
     EXPECT_NEAR(20.0 * std::log10(ours_swr / 30.0), 0.0, allowed("null_bias_db"));
 }
 
+/// The walk's log, and the same with doubts that all its levels share.
+extrema_result with_doubts(level_log log, double u95_db, double tone_bound) {
+    log.common_u95_db = u95_db;
+    log.tone_bound = tone_bound;
+    return find_extrema(log, quantity::tone);
+}
+
+TEST(ExtremaLevels, HoldWhatAllLevelsLeaveInDoubt) {
+    am_signal s;
+    s.rate_hz = 4e3;
+    s.tone_hz = 503.3;
+    s.noise_density = 1e-11;
+    s.field = two_waves{.swr = 5.0};
+    const level_log log = measure(s, 40.0, {});
+    const extrema_result plain = with_doubts(log, 0.0, 0.0), drifted = with_doubts(log, 0.6, 0.0),
+                         foreign = with_doubts(log, 0.0, 1e-3);
+    ASSERT_GE(plain.found.size(), 3U);
+    ASSERT_EQ(drifted.found.size(), plain.found.size());
+    const auto amplitude = [](double db) { return std::pow(10.0, db / 20.0); };
+    for (std::size_t k = 0; k < plain.found.size(); ++k) {
+        const interval_estimate &was = plain.found[k].level_dbfs,
+                                &wider = drifted.found[k].level_dbfs,
+                                &bounded = foreign.found[k].level_dbfs;
+        EXPECT_EQ(wider.value, was.value);
+        EXPECT_NEAR(wider.high95 - wider.value, std::hypot(was.high95 - was.value, 0.6), 1e-9);
+        EXPECT_NEAR(wider.value - wider.low95, std::hypot(was.value - was.low95, 0.6), 1e-9);
+        EXPECT_NEAR(amplitude(bounded.high95), amplitude(was.high95) + 1e-3, 1e-9);
+        EXPECT_NEAR(amplitude(bounded.low95), amplitude(was.low95) - 1e-3, 1e-9);
+    }
+}
+
 } // namespace
 } // namespace tonewalk
