@@ -87,8 +87,12 @@ function(tonewalk_test_program name)
     DISCOVERY_TIMEOUT 60 PROPERTIES LABELS unit)
   foreach(kind IN LISTS special)
     string(TOLOWER ${kind} label)
+    set(cost 0)
+    if(kind STREQUAL Coverage)
+      set(cost 1000)  # the longest ones: first, so that none runs on alone at the end
+    endif()
     gtest_discover_tests(tonewalk_${name}_tests TEST_PREFIX "${name}." TEST_FILTER "${kind}*"
-      DISCOVERY_TIMEOUT 60 TEST_LIST ${name}_${label} PROPERTIES LABELS ${label} TIMEOUT 1800)
+      DISCOVERY_TIMEOUT 60 TEST_LIST ${name}_${label} PROPERTIES LABELS ${label} TIMEOUT 1800 COST ${cost})
   endforeach()
 endfunction()
 

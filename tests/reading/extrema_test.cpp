@@ -90,7 +90,7 @@ std::vector<extremum> of_kind(const extrema_result& r, extremum_kind kind) {
 }
 
 // Table of allowed errors, "null depth": SWR 10 and 30, null SNR 15 dB and more.
-TEST(NullDepth, HoldsForWindowsThatANullFillsSixTimes) {
+TEST(CoverageNullDepth, HoldsForWindowsThatANullFillsSixTimes) {
     for (const double swr : {10.0, 30.0}) {
         double bias = 0.0, count = 0.0, inside = 0.0;
         for (std::uint64_t seed = 1; seed <= 8; ++seed) {
@@ -210,7 +210,7 @@ TEST(Nulls, AreEachFoundOnceFromSwrTwoToFullyCrossed) {
     }
 }
 
-TEST(Nulls, PlacesLieWithinTheirIntervals) {
+TEST(CoverageNulls, PlacesLieWithinTheirIntervals) {
     double inside = 0.0, count = 0.0;
     for (std::uint64_t seed = 1; seed <= 40; ++seed) {
         const two_waves waves{4.0, 12.0, 0.15 * static_cast<double>(seed)};
@@ -232,7 +232,7 @@ TEST(Nulls, PlacesLieWithinTheirIntervals) {
     EXPECT_LE(inside / count, 0.995); // and are not padded
 }
 
-TEST(FlatLevels, HaveNoExtremaInThirtySixThousandRecords) {
+TEST(CoverageFlatLevels, HaveNoExtremaInThirtySixThousandRecords) {
     for (const double snr_db : {25.0, 6.0, -3.0}) {
         am_signal s;
         s.rate_hz = 4e3;
