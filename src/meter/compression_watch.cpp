@@ -22,7 +22,7 @@ constexpr double least_periods = 10.0;     // of the tone in a record: its lines
 constexpr double least_tone_ratio = 100.0; // of the tone's power over its noise
 constexpr std::size_t least_strong_records = 20;
 constexpr double least_level_range_db = 3.0;
-constexpr double significant_sigmas = 5.0;
+constexpr double significant_sigmas = 6.0;
 constexpr double least_compression_db = 0.05;
 constexpr double visible_compression_db = 0.5; // what a judgement has to be able to see
 

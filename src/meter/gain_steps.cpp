@@ -12,7 +12,7 @@ namespace {
 constexpr double least_step_db = 0.4;
 // A whole log is searched: 1.96 would find steps anywhere.
 constexpr double step_sigmas = 4.0;    // of the noise
-constexpr double carrier_sigmas = 3.0; // of the carrier, where the noise steps as well
+constexpr double carrier_sigmas = 2.5; // of the carrier, where the noise steps as well
 constexpr double step_side_s = 10.0;
 constexpr std::size_t least_side = 20; // records on either side
 
@@ -37,8 +37,8 @@ bool are_unbroken(const std::vector<level_pair>& pairs, std::size_t first, std::
 
 /// Between record k and the one `across` further on. Of two orders the step itself falls out of the
 /// difference: it is what the lower one leaves of the fade. The surest order counts.
-std::optional<mean_and_error> carrier_step(const std::vector<level_pair>& pairs, std::size_t k,
-                                           std::size_t across, double every_s) {
+std::optional<value_and_error> carrier_step(const std::vector<level_pair>& pairs, std::size_t k,
+                                            std::size_t across, double every_s) {
     const std::size_t reach = (step_orders - 1) * across;
     if (k < reach || k + across + reach >= pairs.size() ||
         !are_unbroken(pairs, k - reach, k + across + reach, every_s)) {
@@ -55,7 +55,7 @@ std::optional<mean_and_error> carrier_step(const std::vector<level_pair>& pairs,
                                       weight * before.carrier_sigma_db);
         }
     }
-    mean_and_error best{steps[0], std::hypot(noise[0], steps[1] - steps[0])};
+    value_and_error best{steps[0], std::hypot(noise[0], steps[1] - steps[0])};
     for (std::size_t order = 1; order + 1 < step_orders; ++order) {
         const double error = std::hypot(noise[order], steps[order + 1] - steps[order]);
         if (error < best.error) {
@@ -66,15 +66,15 @@ std::optional<mean_and_error> carrier_step(const std::vector<level_pair>& pairs,
 }
 
 /// The one step that both show, weighted by what each knows.
-double both(const mean_and_error& carrier, const mean_and_error& noise) {
+double both(const value_and_error& carrier, const value_and_error& noise) {
     const double c = carrier.error * carrier.error, n = noise.error * noise.error;
-    return c + n > 0.0 ? (carrier.mean * n + noise.mean * c) / (c + n) : carrier.mean;
+    return c + n > 0.0 ? (carrier.value * n + noise.value * c) / (c + n) : carrier.value;
 }
 
-bool are_alike(const mean_and_error& carrier, const mean_and_error& noise) {
+bool are_alike(const value_and_error& carrier, const value_and_error& noise) {
     constexpr double least_difference_db = 0.15, sigmas = 4.0;
-    const mean_and_error apart = difference(carrier, noise);
-    return std::abs(apart.mean) < std::max(least_difference_db, sigmas * apart.error);
+    const double doubt = sigmas * std::hypot(carrier.error, noise.error);
+    return std::abs(carrier.value - noise.value) < std::max(least_difference_db, doubt);
 }
 
 } // namespace
@@ -87,15 +87,14 @@ gain_step find_gain_step(const std::vector<level_pair>& pairs, const level_log& 
         std::max<std::size_t>(2, static_cast<std::size_t>(std::ceil(log.window_s / log.every_s)));
     gain_step best;
     for (std::size_t k = least_side; k + across + least_side < pairs.size(); ++k) {
-        const std::optional<mean_and_error> carrier = carrier_step(pairs, k, across, log.every_s);
+        const std::optional<value_and_error> carrier = carrier_step(pairs, k, across, log.every_s);
         if (!carrier || !carrier->exceeds(carrier_sigmas)) {
             continue;
         }
         const std::size_t after = k + across;
-        const mean_and_error step =
-            difference(noise.over(after, std::min(pairs.size(), after + side)),
-                       noise.over(k + 1 > side ? k + 1 - side : 0, k + 1));
-        const double step_db = both(*carrier, step), sigmas = std::abs(step.mean) / step.error;
+        const value_and_error step = noise.difference({after, std::min(pairs.size(), after + side)},
+                                                      {k + 1 > side ? k + 1 - side : 0, k + 1});
+        const double step_db = both(*carrier, step), sigmas = std::abs(step.value) / step.error;
         if (std::abs(step_db) >= least_step_db && step.exceeds(step_sigmas) &&
             are_alike(*carrier, step) && sigmas > best.sigmas) {
             best = {step_db, 0.5 * (pairs[k].time_s + pairs[after].time_s), sigmas};

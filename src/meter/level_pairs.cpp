@@ -18,28 +18,30 @@ std::vector<level_pair> pairs_of(const level_log& log) {
     return pairs;
 }
 
-mean_and_error difference(const mean_and_error& a, const mean_and_error& b) noexcept {
-    return {a.mean - b.mean, std::hypot(a.error, b.error)};
-}
-
 noise_means::noise_means(const std::vector<level_pair>& pairs, double inflation)
     : inflation_{inflation} {
+    double mean = 0.0;
     for (const level_pair& p : pairs) {
-        middle_ += p.noise_db / static_cast<double>(pairs.size());
+        mean += p.noise_db / static_cast<double>(pairs.size());
     }
     for (const level_pair& p : pairs) {
-        const double x = p.noise_db - middle_;
+        const double x = p.noise_db - mean;
         sums_.push_back(sums_.back() + x);
         squares_.push_back(squares_.back() + x * x);
     }
 }
 
-mean_and_error noise_means::over(std::size_t first, std::size_t past) const noexcept {
-    const auto n = static_cast<double>(past - first);
-    const double mean = (sums_[past] - sums_[first]) / n;
-    const double variance =
-        std::max(0.0, (squares_[past] - squares_[first]) / n - mean * mean) * n / (n - 1.0);
-    return {middle_ + mean, std::sqrt(variance / n * inflation_)};
+noise_means::moments noise_means::of(const run& r) const noexcept {
+    const auto n = static_cast<double>(r.past - r.first);
+    const double mean = (sums_[r.past] - sums_[r.first]) / n;
+    return {n, mean, std::max(0.0, squares_[r.past] - squares_[r.first] - n * mean * mean)};
+}
+
+value_and_error noise_means::difference(const run& above, const run& below) const noexcept {
+    const moments a = of(above), b = of(below);
+    const double variance = (a.scatter + b.scatter) / (a.records + b.records - 2.0);
+    return {a.mean - b.mean,
+            std::sqrt(variance * inflation_ * (1.0 / a.records + 1.0 / b.records))};
 }
 
 } // namespace tonewalk

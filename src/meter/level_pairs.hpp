@@ -16,24 +16,32 @@ struct level_pair {
 };
 [[nodiscard]] std::vector<level_pair> pairs_of(const level_log&);
 
-/// A mean or a difference of means, and its standard error.
-struct mean_and_error {
-    double mean = 0.0, error = 0.0;
-    [[nodiscard]] bool exceeds(double sigmas) const { return std::abs(mean) > sigmas * error; }
+/// A value and its standard error, in decibels.
+struct value_and_error {
+    double value = 0.0, error = 0.0;
+    [[nodiscard]] bool exceeds(double sigmas) const { return std::abs(value) > sigmas * error; }
 };
-[[nodiscard]] mean_and_error difference(const mean_and_error&, const mean_and_error&) noexcept;
 
 /// Means of the noise over runs of records, from sums up to each. Neighbours overlap and scatter
 /// together: `inflation` of them tell what one would.
 class noise_means {
 public:
     noise_means(const std::vector<level_pair>&, double inflation);
-    /// Of records [first, past), two at least; the error is the scatter's.
-    [[nodiscard]] mean_and_error over(std::size_t first, std::size_t past) const noexcept;
+    /// Records [first, past).
+    struct run {
+        std::size_t first = 0, past = 0;
+    };
+    /// By how much the noise of one run lies above that of another; the error is from the scatter
+    /// inside both together, three records at least.
+    [[nodiscard]] value_and_error difference(const run&, const run&) const noexcept;
 
 private:
-    double inflation_, middle_ = 0.0;
-    std::vector<double> sums_{0.0}, squares_{0.0};
+    struct moments {
+        double records = 0.0, mean = 0.0, scatter = 0.0; // scatter: sum of squares about the mean
+    };
+    [[nodiscard]] moments of(const run&) const noexcept;
+    double inflation_;
+    std::vector<double> sums_{0.0}, squares_{0.0}; // about the mean of all
 };
 
 } // namespace tonewalk

@@ -12,8 +12,8 @@ namespace {
 constexpr std::size_t least_group = 10; // of records below or above a carrier level
 
 /// A straight line through the noise over the carrier: a gain that follows all along.
-mean_and_error rise_of_line(const std::vector<level_pair>& pairs, double range_db,
-                            double inflation) {
+value_and_error rise_of_line(const std::vector<level_pair>& pairs, double range_db,
+                             double inflation) {
     const auto n = static_cast<double>(pairs.size());
     double mean_c = 0.0, mean_n = 0.0;
     for (const level_pair& p : pairs) {
@@ -33,11 +33,11 @@ mean_and_error rise_of_line(const std::vector<level_pair>& pairs, double range_d
 
 /// Two levels of noise, below and above some carrier level: a gain that reaches its stops. The
 /// split that shows most.
-mean_and_error rise_of_split(const noise_means& by_carrier, std::size_t records) {
-    mean_and_error best{0.0, 1.0};
+value_and_error rise_of_split(const noise_means& by_carrier, std::size_t records) {
+    value_and_error best{0.0, 1.0};
     for (std::size_t k = least_group; k + least_group <= records; ++k) {
-        const mean_and_error rise = difference(by_carrier.over(0, k), by_carrier.over(k, records));
-        if (rise.mean * best.error > best.mean * rise.error) {
+        const value_and_error rise = by_carrier.difference({0, k}, {k, records});
+        if (rise.value * best.error > best.value * rise.error) {
             best = rise;
         }
     }
@@ -60,18 +60,17 @@ noise_rise find_noise_rise(std::vector<level_pair> pairs, double inflation) {
         return found;
     }
     const noise_means by_carrier{pairs, inflation};
-    const mean_and_error line = rise_of_line(pairs, found.range_db, inflation);
+    const value_and_error line = rise_of_line(pairs, found.range_db, inflation);
     const std::size_t half = pairs.size() / 2;
     found.visible_db =
-        noise_rise_sigmas *
-        difference(by_carrier.over(0, half), by_carrier.over(half, pairs.size())).error;
-    for (const mean_and_error& rise : {line, rise_of_split(by_carrier, pairs.size())}) {
-        if (rise.mean > found.db && rise.mean > noise_rise_sigmas * rise.error) {
-            found.db = rise.mean;
+        noise_rise_sigmas * by_carrier.difference({0, half}, {half, pairs.size()}).error;
+    for (const value_and_error& rise : {line, rise_of_split(by_carrier, pairs.size())}) {
+        if (rise.value > found.db && rise.value > noise_rise_sigmas * rise.error) {
+            found.db = rise.value;
         }
-        found.sigmas = std::max(found.sigmas, rise.mean / rise.error);
+        found.sigmas = std::max(found.sigmas, rise.value / rise.error);
     }
-    found.db = found.db > 0.0 ? found.db : line.mean;
+    found.db = found.db > 0.0 ? found.db : line.value;
     return found;
 }
 

@@ -17,7 +17,7 @@ namespace tonewalk {
 /// the carrier at every level, and so does whatever a linear path makes of both.
 struct compression_result {
     bool judged = false;     ///< false: `evidence` says what was missing
-    bool compressed = false; ///< 5 standard errors, 0.05 dB and more
+    bool compressed = false; ///< 6 standard errors, 0.05 dB and more
     estimate compression_db; ///< what the envelope's crests lose at the highest carrier level
     double level_range_db = not_measured; ///< of the carrier, in the records that were used
     std::string evidence;
