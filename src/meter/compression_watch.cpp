@@ -8,12 +8,11 @@
 
 #include <fmt/core.h>
 
-#include "am_lines.hpp"
+#include "mirrored_lines.hpp"
 #include "product_growth.hpp"
 #include "stretch_samples.hpp"
 #include "tonewalk/maths/distribution.hpp"
 #include "tonewalk/maths/quantile.hpp"
-#include "tonewalk/maths/window.hpp"
 
 namespace tonewalk {
 namespace {
@@ -25,15 +24,6 @@ constexpr double least_level_range_db = 3.0;
 constexpr double significant_sigmas = 6.0;
 constexpr double least_compression_db = 0.05;
 constexpr double visible_compression_db = 0.5; // what a judgement has to be able to see
-
-std::vector<double> weights_summing_to_one(std::size_t size) {
-    const window hann = hann_window(size);
-    std::vector<double> weights(hann.values().begin(), hann.values().end());
-    for (double& w : weights) {
-        w /= hann.coherent_gain() * static_cast<double>(size);
-    }
-    return weights;
-}
 
 /// Records whose tone stands well out of the noise; of weaker ones only the size is known.
 std::vector<modulation_lines> strong_ones(const std::vector<modulation_lines>& records,
@@ -79,10 +69,10 @@ struct compression_watch::state {
     explicit state(const config& c)
         : set{c}, samples{static_cast<std::size_t>(
                       std::llround(std::max(c.window_s, least_periods / c.tone_hz) * c.rate_hz))},
-          weights{weights_summing_to_one(samples)}, weighted{samples}, reach_hz{0.5 * c.rate_hz /
-                                                                                static_cast<double>(
-                                                                                    samples)},
-          orders{orders_reaching(reach_hz, static_cast<double>(samples) / c.rate_hz, c.rate_hz)} {}
+          weights{hann_weights(samples)}, weighted{samples}, lines{c.rate_hz,
+                                                                   samples,
+                                                                   {c.tone_hz, 2.0 * c.tone_hz,
+                                                                    1.5 * c.tone_hz}} {}
 
     void measure_complete();
     void measure(std::span<const cf32> record);
@@ -92,8 +82,7 @@ struct compression_watch::state {
     std::size_t samples; // of a record
     std::vector<double> weights;
     sample_runs weighted; // of the record at hand
-    double reach_hz;      // of a record's carrier about where it was last
-    moment_orders orders;
+    mirrored_lines lines; // tone, its second harmonic, and between them what should be empty
 
     bool held = true; // state of this stretch from here on
     stretch_samples history;
@@ -138,29 +127,24 @@ void compression_watch::state::measure_complete() {
 /// turns them alike.
 void compression_watch::state::measure(std::span<const cf32> record) {
     weighted.set(record, weights);
-    const am_lines about{weighted, {set.rate_hz, carrier_hz, {}, orders}};
-    const double hz = about.carrier_peak_hz(reach_hz);
-    const auto line = [this, hz](double multiple) {
-        return line_moments{weighted, set.rate_hz, hz + multiple * set.tone_hz, {}}.at(
-            hz + multiple * set.tone_hz);
-    };
-    const cf64 carrier = about.at(hz, 0.0).carrier;
-    const double amplitude = std::abs(carrier);
-    follow(hz, amplitude * amplitude);
+    const mirrored_lines::reading read = lines.read(weighted, carrier_hz);
+    const double amplitude = std::abs(read.carrier);
+    follow(carrier_hz + read.offset_hz, amplitude * amplitude);
     if (amplitude == 0.0) {
         return;
     }
-    const cf64 turn_back = std::conj(carrier) / amplitude;
-    const auto in_envelope = [&](double multiple) {
-        return line(multiple) * turn_back + std::conj(line(-multiple) * turn_back);
+    const cf64 turn_back = std::conj(read.carrier) / amplitude;
+    const auto in_envelope = [&turn_back](const mirrored_lines::pair& p) {
+        return p.upper * turn_back + std::conj(p.lower * turn_back);
     };
-    const cf64 tone = in_envelope(1.0), second = in_envelope(2.0);
-    const double tone_amplitude = std::abs(tone);
-    const cf64 twice = tone * tone / (tone_amplitude * tone_amplitude);
+    const auto& [at_tone, at_second, at_nothing] = read.sides;
+    const cf64 tone = in_envelope(at_tone), second = in_envelope(at_second);
+    const double tone_power = std::norm(tone);
+    const double in_step = (second * std::conj(tone * tone)).real();
     records.push_back(
-        {static_cast<float>(amplitude), static_cast<float>(tone_amplitude),
-         tone_amplitude > 0.0 ? static_cast<float>((second * std::conj(twice)).real()) : 0.0F,
-         static_cast<float>(0.5 * (std::norm(line(1.5)) + std::norm(line(-1.5))))});
+        {static_cast<float>(amplitude), static_cast<float>(std::sqrt(tone_power)),
+         static_cast<float>(tone_power > 0.0 ? in_step / tone_power : 0.0),
+         static_cast<float>(0.5 * (std::norm(at_nothing.upper) + std::norm(at_nothing.lower)))});
 }
 
 void compression_watch::state::follow(double peak_hz, double power) {

@@ -39,16 +39,6 @@ struct pending_record {
     noise_reading noise;
 };
 
-std::vector<double> hann_weights(std::size_t size) {
-    const window hann = hann_window(size);
-    std::vector<double> w(hann.values().begin(), hann.values().end());
-    const double sum = hann.coherent_gain() * static_cast<double>(size);
-    for (double& each : w) {
-        each /= sum;
-    }
-    return w;
-}
-
 /// A time to type that is no shorter than this one, in whole milliseconds.
 std::string at_least(double seconds) {
     return format_option_seconds(std::ceil(seconds * 1e3) / 1e3);

@@ -4,6 +4,8 @@
 #include <cmath>
 #include <numbers>
 
+#include "tonewalk/maths/window.hpp"
+
 namespace tonewalk {
 
 sample_runs::sample_runs(std::size_t samples)
@@ -23,6 +25,16 @@ void sample_runs::set(std::span<const cf32> record, std::span<const double> weig
         r.re[n % run_samples] = weights[n] * static_cast<double>(record[n].real());
         r.im[n % run_samples] = weights[n] * static_cast<double>(record[n].imag());
     }
+}
+
+std::vector<double> hann_weights(std::size_t samples) {
+    const window hann = hann_window(samples);
+    std::vector<double> weights(hann.values().begin(), hann.values().end());
+    const double sum = hann.coherent_gain() * static_cast<double>(samples);
+    for (double& w : weights) {
+        w /= sum;
+    }
+    return weights;
 }
 
 run_phasor::run_phasor(double turns_per_sample, cf64 start) : now_{start} {

@@ -33,6 +33,9 @@ private:
     std::vector<run> runs_;
 };
 
+/// A Hann window that sums to 1.
+[[nodiscard]] std::vector<double> hann_weights(std::size_t samples);
+
 /// A turning phasor, `start` at the record's first sample, taken run by run: sample k of the
 /// present run is now() x table()[k].
 class run_phasor {
