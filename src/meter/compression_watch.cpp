@@ -39,6 +39,7 @@ std::vector<modulation_lines> strong_ones(const std::vector<modulation_lines>& r
 
 double median_noise(const std::vector<modulation_lines>& records) {
     std::vector<double> powers;
+    powers.reserve(records.size());
     for (const modulation_lines& r : records) {
         powers.push_back(static_cast<double>(r.noise));
     }
@@ -48,6 +49,7 @@ double median_noise(const std::vector<modulation_lines>& records) {
 
 double level_range_db(const std::vector<modulation_lines>& records) {
     std::vector<double> carriers;
+    carriers.reserve(records.size());
     for (const modulation_lines& r : records) {
         carriers.push_back(static_cast<double>(r.carrier));
     }

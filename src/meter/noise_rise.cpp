@@ -52,6 +52,7 @@ noise_rise find_noise_rise(std::vector<level_pair> pairs, double inflation) {
         return a.carrier_db < b.carrier_db;
     });
     std::vector<double> carriers;
+    carriers.reserve(pairs.size());
     for (const level_pair& p : pairs) {
         carriers.push_back(p.carrier_db);
     }

@@ -58,8 +58,8 @@ std::optional<std::uint64_t> clipped_on(const rail_tally& rail, std::int64_t ful
         }
         return rail.outermost() < full_scale ? std::nullopt : std::optional{rail.counts[0]};
     }
-    const auto steps = static_cast<double>((rail.outermost() - innermost) / spacing_of(rail));
-    const double share = 1.0 / std::sqrt(1.0 + steps); // of a sine's, on the outermost
+    const std::int64_t steps = (rail.outermost() - innermost) / spacing_of(rail);
+    const double share = 1.0 / std::sqrt(1.0 + static_cast<double>(steps)); // a sine's, outermost
     const double margin = clipped_ratio / 3.0;
     const double expected = margin * others * share / (1.0 - share);
     const double most = expected + clipped_sigmas * std::sqrt(expected + clipped_ratio);
