@@ -10,15 +10,14 @@
 namespace {
 
 using namespace tonewalk;
-using json = nlohmann::json;
+using json = nlohmann::ordered_json;
 
 json parsed(const sheet& result) {
     return json::parse(test::json_of(test::sample_context(), result));
 }
 
 TEST(JsonReport, HoldsEveryPartOfTheEnvelopeInOrder) {
-    const auto document =
-        nlohmann::ordered_json::parse(test::json_of(test::sample_context(), test::sample_result()));
+    const auto document = json::parse(test::json_of(test::sample_context(), test::sample_result()));
     std::vector<std::string> keys;
     for (const auto& [key, value] : document.items())
         keys.push_back(key);
