@@ -71,7 +71,7 @@ void note_rivals(found_signal& f, const found_carrier& chosen) {
     if (!rivals.empty()) {
         f.notes.add({note_code::several_carriers, severity::warning,
                      fmt::format("{} was taken; others stand there too", what_to_type(chosen)),
-                     fmt::format("for those type {}", fmt::join(rivals, ", "))});
+                     fmt::format("for those measure with {}", fmt::join(rivals, ", "))});
     }
     if (in_channel) {
         f.notes.add({note_code::carrier_in_channel, severity::warning,
@@ -101,10 +101,10 @@ void take_tone(found_signal& f, double offset_hz, const found_carrier& chosen,
     if (chosen.modulated_unsteadily) {
         f.notes.add({note_code::no_steady_tone, severity::warning,
                      "the carrier is modulated, but no tone is steady for 1 s: speech or programme",
-                     "levels are the carrier's; give --tone where there is one"});
+                     "levels are the carrier's; measure with --tone where there is one"});
     } else {
         f.notes.add({note_code::no_tone, severity::warning, "no tone was found on the carrier",
-                     "levels are the carrier's; give --tone where there is one"});
+                     "levels are the carrier's; measure with --tone where there is one"});
     }
 }
 
@@ -116,7 +116,7 @@ note_set notes_on(const looked_at& what) {
     if (what.seconds() < short_opening_s) {
         notes.add({note_code::short_opening, severity::info,
                    fmt::format("only {:.2g} s could be searched for the signal", what.seconds()),
-                   "give --carrier and --tone where they are known"});
+                   "measure with --carrier and --tone where they are known"});
     }
     return notes;
 }

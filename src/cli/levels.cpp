@@ -78,7 +78,9 @@ struct levels_choice {
 
 std::vector<moment_span> read_references(const std::vector<std::string>& texts) {
     if (!texts.empty() && texts.size() != 2) {
-        throw error{fault::bad_request, fmt::format("is given {} times", texts.size()),
+        throw error{fault::bad_request,
+                    texts.size() == 1 ? std::string{"is given once"}
+                                      : fmt::format("is given {} times", texts.size()),
                     "--reference", "give it twice: one before and one after the walk"};
     }
     std::vector<moment_span> spans;
@@ -100,6 +102,11 @@ levels_choice read_choice(const levels_options& o) {
     c.detector = chosen_detector(o.detector);
     c.wanted = wanted_quantity(o.quantity);
     c.references = read_references(o.references);
+    if (!o.background.empty() && o.recording.recording == "-") {
+        throw error{fault::bad_request, "cannot be measured while standard input waits",
+                    "--background " + o.background,
+                    "write the recording to a file first, and give that"};
+    }
     if (o.background == "-") {
         throw error{fault::bad_request, "cannot be standard input", "--background -",
                     "give a recording in a file"};
@@ -154,9 +161,10 @@ int run_levels(const levels_options& o, const program& program) {
     const record_grid grid = m.grid(choice.every_s, choice.window_s);
     line_meter::config meter_config = m.meter(grid);
     meter_config.envelope_in_use = choice.detector == detector_kind::envelope;
+    background_run background;
     if (!o.background.empty()) {
-        meter_config.background =
-            run_background(o.background, o.recording, m, meter_config, o.running, program);
+        background = run_background(o.background, o.recording, m, meter_config, o.running, program);
+        meter_config.background = background.lines;
     }
     line_meter meter{meter_config};
     m.chain->listen(meter);
@@ -182,6 +190,7 @@ int run_levels(const levels_options& o, const program& program) {
     const compression_result compression = squeezed ? squeezed->result() : compression_result{};
     log.doubts.merge(compression.doubts);
     add_level_notes(log, used, {.compressed = compression.compressed});
+    log.doubts.merge(background.doubts);
     add_background_note(log, used);
     std::optional<reference_drift> drift;
     if (references) {
@@ -193,7 +202,7 @@ int run_levels(const levels_options& o, const program& program) {
         result.add("reference", describe(*drift));
     }
     if (!o.background.empty()) {
-        result.add("background", describe(meter_config.background));
+        result.add("background", describe(background.lines));
     }
     const report_context context = context_of(
         m, pass, program, log, {"levels", choice.detector ? o.detector : std::string{}, used});

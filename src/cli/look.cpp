@@ -114,8 +114,9 @@ int run_look(const look_options& o, const program& program) {
     outputs.spare(o.recording.recording);
 
     opened open = open_with_hash(o.recording.request());
-    const recording_survey survey =
-        unless_stopped(*open.source, program, [&open] { return survey_recording(*open.source); });
+    const recording_survey survey = unless_stopped(*open.source, program, [&] {
+        return survey_recording(*open.source, {}, program.stopping.token());
+    });
     const whole_view view = watch_all(open.source, survey, o.running, program);
     const stream_facts& facts = open.source->facts();
 
@@ -127,6 +128,12 @@ int run_look(const look_options& o, const program& program) {
     context.recordings.front().sha512 = open.sha512;
     context.notes.merge(open.notes);
     context.notes.merge(survey.notes);
+    if (survey.carriers.empty()) {
+        context.notes.add({note_code::weak_carrier, severity::warning,
+                           "no carrier stands out of the noise where the recording was looked at",
+                           "name its frequency to levels or hear if it is known; else check "
+                           "antenna, gain and frequency"});
+    }
     context.notes.merge(view.notes);
     if (json) {
         write_json(*json, context, result, {.curves = o.json.with_curves()});

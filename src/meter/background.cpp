@@ -31,7 +31,8 @@ background_line mean_line(const level_log& log, quantity which, double overlap) 
         return {};
     }
     const double mean = sum / n;
-    const double scatter = n > 1.0 ? std::sqrt(std::max(0.0, squares / n - mean * mean)) : 0.0;
+    const double scatter =
+        n > 1.0 ? std::sqrt(std::max(0.0, (squares - n * mean * mean) / (n - 1.0))) : 0.0;
     const double error = std::max(scatter, noise / n) * std::sqrt(overlap / n);
     const bool stands_out = mean > two_sided_95 * error;
     return {stands_out ? mean : 0.0, std::sqrt(std::max(0.0, mean) + two_sided_95 * error)};

@@ -16,6 +16,7 @@ namespace {
 constexpr double least_control_db = 0.5;
 constexpr std::size_t least_records = 30;
 constexpr double least_range_db = 6.0; // of the carrier
+constexpr double least_swing_db = 3.0; // of the noise alone
 
 note control_note(const gain_control_result& r) {
     return {note_code::agc_suspected, severity::warning, r.evidence,
@@ -30,8 +31,34 @@ note step_note(const gain_control_result& r) {
             "the receiver's gain changed; levels before and after do not compare"};
 }
 
-void judge(gain_control_result& r, const noise_rise& rise) {
+/// How far the noise moves by itself: between the second in which it is highest and the one in
+/// which it is lowest; 0 where that is no more than its scatter.
+double noise_swing_db(const std::vector<level_pair>& pairs, double every_s, double inflation) {
+    constexpr double run_s = 1.0, swing_sigmas = 6.0;
+    constexpr std::size_t least_run = 8;
+    const auto run = std::max(least_run, static_cast<std::size_t>(run_s / every_s));
+    const noise_means means{pairs, inflation};
+    noise_means::run high{0, run}, low{0, run};
+    for (std::size_t first = run; first + run <= pairs.size(); first += run) {
+        const noise_means::run here{first, first + run};
+        high = means.difference(here, high).value > 0.0 ? here : high;
+        low = means.difference(here, low).value < 0.0 ? here : low;
+    }
+    const value_and_error swing = means.difference(high, low);
+    return swing.exceeds(swing_sigmas) ? swing.value : 0.0;
+}
+
+void judge(gain_control_result& r, const noise_rise& rise, double swing_db) {
     r.carrier_range_db = rise.range_db;
+    if (swing_db >= least_swing_db && swing_db > 2.0 * rise.range_db) {
+        r.judged = r.suspected = true;
+        r.noise_rise_db = swing_db;
+        r.evidence =
+            fmt::format("the noise moves by {:.1f} dB while the carrier moves by {:.1f} dB "
+                        "only, as if the receiver held the carrier's level",
+                        swing_db, rise.range_db);
+        return;
+    }
     if (rise.range_db < least_range_db) {
         r.evidence = fmt::format("the carrier moves by {:.1f} dB only: gain control would not show",
                                  rise.range_db);
@@ -65,7 +92,7 @@ gain_control_result judge_gain_control(const level_log& log, bool compressed) {
     const double inflation = hann_overlap_inflation(log.every_s / log.window_s).power;
     const gain_step step = find_gain_step(pairs, log, inflation);
     const noise_rise rise = find_noise_rise(pairs, inflation);
-    judge(r, rise);
+    judge(r, rise, noise_swing_db(pairs, log.every_s, inflation));
     // One gain that moves can look like both: it is what explains more of the noise.
     if (step.sigmas > 0.0 && (!r.suspected || step.sigmas > rise.sigmas)) {
         r.step_db = step.db;

@@ -57,7 +57,7 @@ void level_intervals::complete(level_log& log, const common& c) {
         r.tone.power /= c.tone_response * c.tone_response;
         r.tone.sigma /= c.tone_response;
     }
-    correct_incidental_phase(log);
+    correct_incidental_phase(log, 0.5 * c.background.tone.power);
     for (std::size_t k = 0; k < log.records.size(); ++k) {
         fill(log, log.records[k], basis_[k], c);
     }
@@ -66,13 +66,13 @@ void level_intervals::complete(level_log& log, const common& c) {
 
 /// Where the carrier was too weak to tell amplitude from phase, the share of incidental phase that
 /// the other records show is taken off in power; its own uncertainty becomes a bound.
-void level_intervals::correct_incidental_phase(level_log& log) {
+void level_intervals::correct_incidental_phase(level_log& log, double background_power) {
     double in_phase = 0.0, across = 0.0, across_variance = 0.0;
     for (std::size_t k = 0; k < log.records.size(); ++k) {
         const level_record& r = log.records[k];
         if (basis_[k].split && r.tone.detected) {
-            in_phase += r.tone.power;
-            across += basis_[k].across_power;
+            in_phase += r.tone.power - background_power;
+            across += basis_[k].across_power - background_power;
             const double n2 = 2.0 * r.noise_power;
             across_variance += n2 * n2 + 2.0 * n2 * std::max(0.0, basis_[k].across_power);
         }
@@ -163,7 +163,10 @@ void level_intervals::fill(level_log& log, level_record& r, const record_basis& 
     const double tone_noise = r.tone.sigma * r.tone.sigma; // of one quadrature
     const int degrees = basis.split ? 2 : 4;
     const double raw_ratio = r.tone.power / (degrees * tone_noise) + 1.0;
-    const line_power tone = without(c.background.tone, r.tone);
+    // Of a foreign line's power, seen in both sidebands together, a split keeps half on average.
+    background_line tone_background = c.background.tone;
+    tone_background.power *= basis.split ? 0.5 : 1.0;
+    const line_power tone = without(tone_background, r.tone);
     const double tone_snr = tone.power / (4.0 * tone_noise);
     r.tone_dbfs =
         level(tone, raw_ratio, degrees, r.tone.sigma, tone_snr, on_tone, basis.independent);

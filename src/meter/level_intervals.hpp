@@ -39,7 +39,8 @@ private:
         double absolute = 0.0; // amplitude
         double relative = 0.0;
     };
-    void correct_incidental_phase(level_log&);
+    /// `background_power`: in either part of a split record.
+    void correct_incidental_phase(level_log&, double background_power);
     void fill(level_log&, level_record&, const record_basis&, const common&);
     [[nodiscard]] interval_estimate level(const line_power&, double raw_ratio, int degrees,
                                           double unit, double line_snr, const bounds&,

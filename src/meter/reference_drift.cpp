@@ -17,7 +17,7 @@ namespace {
 const double db_per_relative_power = 10.0 / std::log(10.0);
 
 estimate level_at(const level_log& log, const reference_span& span) {
-    double n = 0.0, sum = 0.0, squares = 0.0;
+    double n = 0.0, sum = 0.0, squares = 0.0, noise = 0.0;
     for (const level_record& r : log.records) {
         const bool whole = r.time_s - 0.5 * log.window_s >= span.from_s &&
                            r.time_s + 0.5 * log.window_s <= span.until_s;
@@ -25,6 +25,7 @@ estimate level_at(const level_log& log, const reference_span& span) {
             n += 1.0;
             sum += r.carrier.power;
             squares += r.carrier.power * r.carrier.power;
+            noise += 4.0 * r.carrier.power * r.carrier.sigma * r.carrier.sigma;
         }
     }
     if (n < 2.0 || sum <= 0.0) {
@@ -34,11 +35,13 @@ estimate level_at(const level_log& log, const reference_span& span) {
                                 log.window_s + log.every_s)};
     }
     const double mean = sum / n;
-    const double variance = std::max(0.0, squares - n * mean * mean) / (n - 1.0);
+    // No less than what the noise in the records themselves scatters by.
+    const double variance =
+        std::max({squares - n * mean * mean, noise * (n - 1.0) / n, 0.0}) / (n - 1.0);
     const double spread = hann_overlap_inflation(log.every_s / log.window_s).amplitude;
     const double error_of_mean = std::sqrt(variance / n * spread) / mean;
-    return {decibel::from_power_ratio(mean).db(),
-            two_sided_95 * db_per_relative_power * error_of_mean};
+    const double t = student_t_quantile(0.975, std::max(1.0, (n - 1.0) / spread));
+    return {decibel::from_power_ratio(mean).db(), t * db_per_relative_power * error_of_mean};
 }
 
 void lower(interval_estimate& level, double by_db, double more_u95_db) {

@@ -109,9 +109,11 @@ std::vector<extremum> walk::extrema() const {
     const std::vector<turn> at = turns();
     const extremum_placer placer{steps_, log_, which_};
     all.reserve(at.size());
-    for (const turn& t : at) {
-        all.push_back(t.kind == extremum_kind::peak ? placer.peak_at(t.place)
-                                                    : placer.null_at(t.place));
+    for (std::size_t k = 0; k < at.size(); ++k) {
+        const extremum_placer::reach between{
+            k > 0 ? at[k - 1].place : 0, k + 1 < at.size() ? at[k + 1].place : steps_.size() - 1};
+        all.push_back(at[k].kind == extremum_kind::peak ? placer.peak_at(at[k].place, between)
+                                                        : placer.null_at(at[k].place, between));
     }
     set_prominence(all, at);
     return all;
@@ -140,8 +142,13 @@ std::vector<log_step> steps_of(std::span<const level_record> records, quantity w
     return steps;
 }
 
+constexpr double least_tone_cycles = 4.0; // that a window holds
+
 /// What to type: two digits, rounded down.
 double window_to_type_ms(double longest_s) {
+    if (longest_s <= 0.0) {
+        return 0.0;
+    }
     const double step_ms = std::pow(10.0, std::floor(std::log10(1000.0 * longest_s)) - 1.0);
     return std::floor(1000.0 * longest_s / step_ms) * step_ms;
 }
@@ -157,13 +164,18 @@ void note_window_bound(extrema_result& result, const level_log& log) {
         return;
     }
     const bool one = bound == 1;
+    const double window_ms = window_to_type_ms(narrowest_s / least_null_windows);
+    const double least_s = log.has_tone() ? least_tone_cycles / log.tone_hz : 0.0;
+    const std::string mend =
+        window_ms > 1000.0 * least_s
+            ? fmt::format("give --window {:g}ms, or walk more slowly", window_ms)
+            : "walk more slowly";
     result.doubts.add(
         {note_code::window_bound, severity::warning,
          fmt::format("{} narrower than {:.0f} windows of {:.3g} s: the window fills {}",
                      one ? "1 null is" : fmt::format("{} nulls are", bound), least_null_windows,
                      log.window_s, one ? "it" : "them"),
-         fmt::format("{} depth is a bound; give --window {:g}ms, or walk more slowly",
-                     one ? "its" : "their", window_to_type_ms(narrowest_s / least_null_windows))});
+         fmt::format("{} depth is a bound; {}", one ? "its" : "their", mend)});
 }
 
 } // namespace

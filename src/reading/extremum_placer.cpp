@@ -60,31 +60,32 @@ extremum_placer::extremum_placer(std::span<const log_step> steps, const level_lo
 
 /// The records about `place`, in a row, whose power stays above (or below) `limit`.
 std::pair<std::size_t, std::size_t> extremum_placer::run_about(std::size_t place, double limit,
-                                                               bool above) const {
+                                                               bool above, const reach& r) const {
     const auto inside = [&](std::size_t k) {
         return above ? steps_[k].power >= limit : steps_[k].power <= limit;
     };
     std::size_t first = place, last = place;
-    while (first > 0 && inside(first - 1)) {
+    while (first > r.first && inside(first - 1)) {
         --first;
     }
-    while (last + 1 < steps_.size() && inside(last + 1)) {
+    while (last < r.last && inside(last + 1)) {
         ++last;
     }
-    while (last - first + 1 < least_fit_records && (first > 0 || last + 1 < steps_.size())) {
-        first -= first > 0 ? 1U : 0U;
-        last += last + 1 < steps_.size() ? 1U : 0U;
+    while (last - first + 1 < least_fit_records && (first > r.first || last < r.last)) {
+        first -= first > r.first ? 1U : 0U;
+        last += last < r.last ? 1U : 0U;
     }
     return {first, last};
 }
 
 /// The records about `place`, in a row, that are as undetected as it is; itself if it is detected.
-std::pair<std::size_t, std::size_t> extremum_placer::undetected_about(std::size_t place) const {
+std::pair<std::size_t, std::size_t> extremum_placer::undetected_about(std::size_t place,
+                                                                      const reach& r) const {
     std::size_t first = place, last = place;
-    while (last + 1 < steps_.size() && !steps_[place].detected && !steps_[last + 1].detected) {
+    while (last < r.last && !steps_[place].detected && !steps_[last + 1].detected) {
         ++last;
     }
-    while (first > 0 && !steps_[place].detected && !steps_[first - 1].detected) {
+    while (first > r.first && !steps_[place].detected && !steps_[first - 1].detected) {
         --first;
     }
     return {first, last};
@@ -156,6 +157,9 @@ double extremum_placer::width_s(std::size_t place, double level) const {
             std::clamp((level - a.power) / std::max(b.power - a.power, 1e-300), 0.0, 1.0);
         return a.record->time_s + share * (b.record->time_s - a.record->time_s);
     };
+    if (steps_[place].power > level) {
+        return 0.0;
+    }
     std::size_t left = place, right = place;
     while (left > 0 && steps_[left].power <= level) {
         --left;
@@ -184,10 +188,10 @@ interval_estimate extremum_placer::level_of_fit(const parabola_vertex& fit, std:
                               which_);
 }
 
-extremum extremum_placer::peak_at(std::size_t place) const {
+extremum extremum_placer::peak_at(std::size_t place, const reach& r) const {
     extremum e;
     e.kind = extremum_kind::peak;
-    const auto [first, last] = run_about(place, peak_reach * steps_[place].power, true);
+    const auto [first, last] = run_about(place, peak_reach * steps_[place].power, true, r);
     const auto fit = vertex(first, last);
     take_time(e, fit, first, last, place);
     const bool fitted = fit && fit->bend < 0.0 && fit->y > 0.0 && e.time_s == fit->x;
@@ -196,18 +200,18 @@ extremum extremum_placer::peak_at(std::size_t place) const {
     return e;
 }
 
-extremum extremum_placer::null_at(std::size_t place) const {
+extremum extremum_placer::null_at(std::size_t place, const reach& r) const {
     extremum e;
     e.kind = extremum_kind::null;
     const log_step& bottom = steps_[place];
     e.floor_limited = !bottom.detected;
-    const auto [first, last] = undetected_about(place);
+    const auto [first, last] = undetected_about(place, r);
     const std::size_t middle = (first + last) / 2;
     const double bottom_power =
         e.floor_limited
             ? decibel::from_db(level_of(*steps_[middle].record, which_).high95).power_ratio()
             : std::max(bottom.power, bottom.sigma * bottom.sigma);
-    const auto [from, until] = run_about(middle, null_reach * bottom_power, false);
+    const auto [from, until] = run_about(middle, null_reach * bottom_power, false, r);
     const auto fit = vertex(from, until);
     take_time(e, fit, from, until, middle);
     const bool fitted = fit && fit->bend > 0.0 && e.time_s == fit->x && !e.floor_limited;
@@ -215,7 +219,10 @@ extremum extremum_placer::null_at(std::size_t place) const {
     e.level_dbfs = fitted ? level_of_fit(*fit, from, until) : nearest;
     const double fitted_bottom =
         fitted ? std::max(fit->y, bottom.sigma * bottom.sigma) : bottom_power;
-    e.width_s = width_s(middle, null_reach * fitted_bottom);
+    const double edge = null_reach * fitted_bottom;
+    e.width_s = fitted && steps_[middle].power > edge // it lies between two records
+                    ? 2.0 * std::sqrt(2.0 * (edge - fit->y) / fit->bend)
+                    : width_s(middle, edge);
     e.window_bound = e.width_s < least_null_windows * window_s_;
     if (e.window_bound) { // whichever of fit and record lets the null be less deep
         e.level_dbfs.high95 = std::fmax(e.level_dbfs.high95, nearest.high95);

@@ -24,13 +24,18 @@ struct log_step {
 class extremum_placer {
 public:
     extremum_placer(std::span<const log_step> steps, const level_log&, quantity);
-    [[nodiscard]] extremum peak_at(std::size_t place) const;
-    [[nodiscard]] extremum null_at(std::size_t place) const;
+    /// Steps that a turn may be placed by: no further than its neighbours.
+    struct reach {
+        std::size_t first = 0, last = 0;
+    };
+    [[nodiscard]] extremum peak_at(std::size_t place, const reach&) const;
+    [[nodiscard]] extremum null_at(std::size_t place, const reach&) const;
 
 private:
-    [[nodiscard]] std::pair<std::size_t, std::size_t> undetected_about(std::size_t place) const;
+    [[nodiscard]] std::pair<std::size_t, std::size_t> undetected_about(std::size_t place,
+                                                                       const reach&) const;
     [[nodiscard]] std::pair<std::size_t, std::size_t> run_about(std::size_t place, double limit,
-                                                                bool above) const;
+                                                                bool above, const reach&) const;
     [[nodiscard]] std::optional<parabola_vertex> vertex(std::size_t first, std::size_t last) const;
     [[nodiscard]] double shape_error(const parabola_vertex&, std::size_t first,
                                      std::size_t last) const noexcept;

@@ -91,6 +91,32 @@ TEST(Background, IsTakenOffInPowerOnAverage) {
     EXPECT_NEAR(mean_dbfs(seen_without_transmitter(line)), -40.0, 0.05);
 }
 
+/// The intruder on the tone's upper line instead; two whole turns of it.
+double mean_tone_dbfs(double carrier_dbfs, double intruder_dbfs, bool corrected) {
+    const intruder line{.dbfs = intruder_dbfs, .turns_per_s = 503.3 + 0.03};
+    am_signal s = transmitter(carrier_dbfs);
+    const background_lines b = corrected ? seen_without_transmitter(line) : background_lines{};
+    double sum = 0.0;
+    const level_log log = log_of(s, with(line, s, 66.7), b);
+    for (const level_record& r : log.records) {
+        sum += r.tone.power / static_cast<double>(log.records.size());
+    }
+    return 10.0 * std::log10(sum);
+}
+
+TEST(Background, OfTheToneIsTakenOffOnAverageWhereTheCarrierIsStrong) {
+    const double truth_dbfs = -40.0 + 20.0 * std::log10(0.5);
+    EXPECT_NEAR(mean_tone_dbfs(-40.0, -58.0, false),
+                10.0 * std::log10(std::pow(10.0, truth_dbfs / 10.0) + std::pow(10.0, -5.8)), 0.05);
+    EXPECT_NEAR(mean_tone_dbfs(-40.0, -58.0, true), truth_dbfs, 0.05);
+}
+
+TEST(Background, OfTheToneIsTakenOffOnAverageWhereTheCarrierIsWeak) {
+    const double truth_dbfs = -85.0 + 20.0 * std::log10(0.5); // carrier 10 dB over a line's noise
+    EXPECT_NEAR(mean_tone_dbfs(-85.0, -93.0, true), truth_dbfs, 0.5);
+    EXPECT_GT(mean_tone_dbfs(-85.0, -93.0, false), truth_dbfs + 1.5);
+}
+
 TEST(Background, EveryRecordsIntervalHoldsTheTruth) {
     const intruder line{.dbfs = -52.0};
     const am_signal s = transmitter(-40.0);

@@ -324,5 +324,20 @@ TEST(ExtremaLevels, HoldWhatAllLevelsLeaveInDoubt) {
     }
 }
 
+TEST(NullDepth, AdvisesAWindowForANullBetweenTwoRecords) {
+    am_signal s;
+    s.rate_hz = 4e3;
+    s.tone_hz = 503.3;
+    s.noise_density = 1e-13;
+    for (const double phase : {0.1, 0.9, 1.7, 2.5}) {
+        s.field = two_waves{.swr = 300.0, .wavelength_s = 8.0, .phase = phase};
+        const extrema_result r = find_extrema(measure(s, 12.0, {}), quantity::tone);
+        ASSERT_TRUE(r.doubts.has(note_code::window_bound));
+        const std::string& advice = r.doubts.all().front().advice;
+        EXPECT_EQ(advice.find("nan"), std::string::npos) << advice;
+        EXPECT_NE(advice.find("walk more slowly"), std::string::npos) << advice;
+    }
+}
+
 } // namespace
 } // namespace tonewalk

@@ -10,7 +10,7 @@ namespace tonewalk {
 /// docs/results.md.
 struct level_note_options {
     bool compressed = false; ///< the receiver is known to squeeze strong signals
-    bool heard = false;      ///< the log only goes with audio: no bounds are shown, no window chosen
+    bool heard = false; ///< the log only goes with audio: no bounds are shown, no window chosen
 };
 void add_level_notes(level_log&, quantity, const level_note_options& = {});
 
