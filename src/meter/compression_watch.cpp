@@ -188,7 +188,7 @@ compression_result compression_watch::result() const {
     r.judged = significant || significant_sigmas * error_db <= visible_compression_db;
     r.compressed = significant && depth_agrees(growth);
     r.evidence = fmt::format("over {:.1f} dB of carrier level the tone's second harmonic tells of "
-                             "{:.2f} +- {:.2f} dB of compression at the highest crests",
+                             "{:.2f} +/- {:.2f} dB of compression at the highest crests",
                              r.level_range_db, r.compression_db.value, r.compression_db.u95);
     if (r.compressed) {
         r.doubts.add(compressed_note(r));
@@ -198,7 +198,6 @@ compression_result compression_watch::result() const {
 
 sheet describe(const compression_result& r) {
     sheet s;
-    s.add("judged", "", r.judged);
     s.add("compressed", "", r.judged ? cell{r.compressed} : cell{});
     s.add("compression_db", "dB", r.compression_db);
     s.add("level_range_db", "dB", r.level_range_db);

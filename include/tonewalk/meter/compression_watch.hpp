@@ -23,7 +23,7 @@ struct compression_result {
     std::string evidence;
     note_set doubts; ///< compressed
 };
-/// judged, compressed (null when not judged), compression_db, level_range_db, evidence.
+/// compressed (null when not judged), compression_db, level_range_db, evidence.
 [[nodiscard]] sheet describe(const compression_result&);
 
 /// Listens beside the line meter and reads carrier, tone and second harmonic from Hann-windowed

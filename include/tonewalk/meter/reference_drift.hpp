@@ -25,7 +25,7 @@ struct reference_drift {
 /// middles of the two spans and level beyond them, so that all levels are those at the first
 /// reference; the depth stays. Half the drift, and what noise leaves unknown of it, joins every
 /// level's interval. The spans ascend and do not overlap. Throws error{malformed} naming
-/// --reference where one holds no whole record, or none that detects the carrier.
+/// --reference where one holds fewer than two whole records that detect the carrier.
 reference_drift remove_drift(level_log&, const std::array<reference_span, 2>&);
 
 /// first_dbfs, second_dbfs, drift_db, each with _u95.
