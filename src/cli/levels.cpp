@@ -84,6 +84,7 @@ std::vector<moment_span> read_references(const std::vector<std::string>& texts) 
                     "--reference", "give it twice: one before and one after the walk"};
     }
     std::vector<moment_span> spans;
+    spans.reserve(texts.size());
     for (const std::string& text : texts) {
         spans.push_back(parse_span(text, "--reference"));
     }

@@ -24,8 +24,8 @@ sheet_table table_of(const char* key, const spans& rows, double rate_hz) {
     t.form = table_form::as_records;
     t.rows = rows->size();
     const auto seconds = [rate_hz](sample_index n) { return static_cast<double>(n) / rate_hz; };
-    t.columns.push_back(column(
-        rows, "time_s", "s", [seconds](const span_of_time& s) { return seconds(s.position); }));
+    t.columns.push_back(column(rows, "time_s", "s",
+                               [seconds](const span_of_time& s) { return seconds(s.position); }));
     t.columns.push_back(column(rows, "duration_s", "s",
                                [seconds](const span_of_time& s) { return seconds(s.count); }));
     t.columns.push_back(column(rows, "samples", "", [](const span_of_time& s) {
@@ -64,8 +64,8 @@ sheet describe_segments(const stream_facts& facts, sample_index measured) {
                 gaps.push_back({0, end, stretch.position - end, {}});
             }
         }
-        segments.push_back({stretch.first, stretch.position, stretch.count.value_or(measured),
-                            stretch.centre_hz});
+        segments.push_back(
+            {stretch.first, stretch.position, stretch.count.value_or(measured), stretch.centre_hz});
     }
     sheet s;
     s.add(segments_of(facts, std::make_shared<const std::vector<span_of_time>>(segments)));
