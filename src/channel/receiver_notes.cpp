@@ -57,17 +57,6 @@ void note_line(found_signal& f, note_code code, std::string_view what, double ra
     }
 }
 
-/// A carrier at the receiver's own 0 Hz: neither its DC line nor the image can be told from it.
-void note_at_centre(found_signal& f, const std::string& advice) {
-    for (const auto code : {note_code::dc_in_channel, note_code::image_in_channel}) {
-        f.notes.add({code, severity::warning,
-                     fmt::format("the carrier stands at the recording's centre, where the "
-                                 "receiver's {} cannot be told from it",
-                                 code == note_code::dc_in_channel ? "DC line" : "image"),
-                     advice});
-    }
-}
-
 } // namespace
 
 void note_receiver(found_signal& f, double offset_hz, const found_carrier& chosen,
@@ -83,15 +72,6 @@ void note_receiver(found_signal& f, double offset_hz, const found_carrier& chose
     f.dc_amplitude = dc_line(s.look.what, s.spectrum, offset_hz);
     note_line(f, note_code::dc_in_channel, "the receiver's DC line", f.dc_amplitude / carrier,
               advice);
-    if (f.tone_hz && std::abs(from_centre_hz - *f.tone_hz) < 1.5 * s.spectrum.bin_hz()) {
-        f.notes.add({note_code::dc_in_channel, severity::warning,
-                     "one of the tone's lines falls on the recording's centre, where the "
-                     "receiver's DC line cannot be told from it",
-                     advice});
-    }
-    if (from_centre_hz < centre_bins * s.spectrum.bin_hz()) {
-        note_at_centre(f, advice);
-    }
     image_fit images;
     images.add(s.look.what, s.spectrum);
     if (const auto balance = images.result()) {
