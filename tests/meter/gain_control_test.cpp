@@ -105,6 +105,17 @@ TEST(GainStepsOfALog, AreNoneAcrossMissingRecords) {
     EXPECT_FALSE(judge_gain_control(log).doubts.has(note_code::gain_step));
 }
 
+TEST(GainControlResult, ThatHoldsTheCarrierStillShowsInTheNoise) {
+    const auto levels_out = [](double t) { return -0.95 * fade(t); }; // 1 dB of 20 are left
+    const gain_control_result r = judge_gain_control(logged(fade, levels_out));
+    EXPECT_TRUE(r.suspected);
+    EXPECT_TRUE(r.doubts.has(note_code::agc_suspected));
+    EXPECT_NEAR(r.noise_rise_db, 19.0, 1.0);
+    const auto hardly = [](double t) { return -0.1 * fade(t); }; // 2 dB of noise, a steady field
+    EXPECT_FALSE(
+        judge_gain_control(logged([&](double t) { return -hardly(t); }, hardly)).suspected);
+}
+
 TEST(GainControlResult, SheetIsNullWhereNothingWasJudged) {
     const sheet unknown = describe(gain_control_result{});
     EXPECT_TRUE(std::holds_alternative<std::monostate>(*unknown.find("suspected")));
