@@ -7,6 +7,7 @@ the line of the sources that it alone ran, or where none is its own one that as 
 cases ran exactly the same lines: one of them proves nothing that the other does not.
 """
 import collections
+import concurrent.futures
 import json
 import os
 import pathlib
@@ -26,7 +27,8 @@ def lines_run(counters, build):
         if not beside.exists():
             beside.symlink_to(gcno)
         files.append(gcda)
-    done = subprocess.run(["gcov", "--json-format", "--stdout", *files], cwd=build, capture_output=True, check=True)
+    done = subprocess.run(["gcov", "--json-format", "--stdout", "--relative-only", "--source-prefix", HOUSE, *files],
+                          cwd=build, capture_output=True, check=True)
     run = set()
     for text in done.stdout.decode().splitlines():
         for source in json.loads(text)["files"]:
@@ -42,15 +44,17 @@ def main(build):
     from malformed_cases import CASES
     from malformed_test import Outcome
 
-    run = {}
-    with tempfile.TemporaryDirectory() as folder:
-        for number, case in enumerate(CASES):
-            work, counters = pathlib.Path(folder) / str(number), pathlib.Path(folder) / f"{number}.counters"
-            work.mkdir()
-            got = Outcome(case, work, {"GCOV_PREFIX": str(counters)})
-            if got.status != case.status:
-                sys.exit(f"{case.kind}, {case.name}: status {got.status}, not {case.status}: {got.err}")
-            run[case.kind, case.name] = frozenset(lines_run(counters, build))
+    def lines_of(number, case):
+        work, counters = pathlib.Path(folder) / str(number), pathlib.Path(folder) / f"{number}.counters"
+        work.mkdir()
+        got = Outcome(case, work, {"GCOV_PREFIX": str(counters)})
+        if got.status != case.status:
+            sys.exit(f"{case.kind}, {case.name}: status {got.status}, not {case.status}: {got.err}")
+        return frozenset(lines_run(counters, build))
+
+    with tempfile.TemporaryDirectory() as folder, concurrent.futures.ThreadPoolExecutor(os.cpu_count()) as pool:
+        ways = pool.map(lines_of, range(len(CASES)), CASES)
+        run = {(case.kind, case.name): lines for case, lines in zip(CASES, ways)}
     often = collections.Counter(line for lines in run.values() for line in lines)
     for case, lines in run.items():
         fewest = min(often[line] for line in lines)
