@@ -1,5 +1,5 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
-"""Every case of malformed_cases.py: its status, its one line with the mend, in time, in little memory, nothing left."""
+"""Every case and variant of malformed_cases.py: its status, its one line with the mend, in time, in little memory, nothing left."""
 import contextlib
 import os
 import re
@@ -7,7 +7,7 @@ import subprocess
 import time
 import unittest
 
-from malformed_cases import CASES
+from malformed_cases import CASES, VARIANTS
 from program import PROGRAM, ProgramTest
 
 MOST_SECONDS, MOST_KIB = 5.0, 300 * 1024
@@ -56,10 +56,10 @@ class Malformed(ProgramTest):
         for kind in ("metadata", "archive", "container", "raw", "scene", "option", "output", "pipe"):
             self.assertGreaterEqual(kinds.count(kind), 6, kind)
         self.assertGreaterEqual(len(CASES), 55)
-        self.assertEqual(len({(case.kind, case.name) for case in CASES}), len(CASES))
+        self.assertEqual(len({(case.kind, case.name) for case in CASES + VARIANTS}), len(CASES + VARIANTS))
 
     def test_every_case(self):
-        for number, case in enumerate(CASES):
+        for number, case in enumerate(CASES + VARIANTS):
             with self.subTest(kind=case.kind, name=case.name):
                 got = self.outcome(number, case)
                 self.assertEqual(got.status, case.status, got.err)
